@@ -1,0 +1,5 @@
+export * from './colours';
+export * from './theme';
+export * from './grades';
+export { useTheme, ThemeContext } from './useTheme';
+export { useWide } from './useWide';
