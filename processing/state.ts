@@ -129,7 +129,12 @@ export interface Reason {
   grade: Grade;
   statistic: { label: string; value: number | null; unit: string };
   /** Limits drawn to scale: good inside [low, high] of soft, rejected outside hard. null = none on that side. */
-  limits: { softLow: number | null; softHigh: number | null; hardLow: number | null; hardHigh: number | null };
+  limits: {
+    softLow: number | null;
+    softHigh: number | null;
+    hardLow: number | null;
+    hardHigh: number | null;
+  };
   /** About five words with the number: "Steady-state deviation 47 %". */
   finding: string;
   /** One or two plain sentences: what was seen, what it means. */

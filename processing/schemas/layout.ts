@@ -70,7 +70,11 @@ const partSource = z.discriminatedUnion('from', [
 
 export const timeSourceSchema = z.discriminatedUnion('kind', [
   /** One column with date and time: ISO 8601 (T or blank), or a pattern. */
-  z.object({ kind: z.literal('stamp'), column: z.number().int().min(0), format: z.union([z.literal('iso'), pattern]) }),
+  z.object({
+    kind: z.literal('stamp'),
+    column: z.number().int().min(0),
+    format: z.union([z.literal('iso'), pattern]),
+  }),
   /** A date column and a time-of-day column. */
   z.object({
     kind: z.literal('date-and-time'),

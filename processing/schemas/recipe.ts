@@ -57,7 +57,11 @@ export const recipeSettingsSchema = z.object({
   ]),
   screening: z.object({
     spikeSharePercent: softHard,
-    amplitudeResolution: z.object({ windowPoints: z.number().int().min(100), bins: z.number().int(), emptyPercent: softHard }),
+    amplitudeResolution: z.object({
+      windowPoints: z.number().int().min(100),
+      bins: z.number().int(),
+      emptyPercent: softHard,
+    }),
     dropouts: z.object({ interiorPercent: softHard, extremePercent: softHard }),
     skewness: z.object({ soft: band, hard: band }),
     kurtosis: z.object({ soft: band, hard: band }),
@@ -100,8 +104,16 @@ export const recipeSettingsSchema = z.object({
   ]),
   density: z.discriminatedUnion('method', [z.object({ method: z.literal('coupled-covariances') })]),
   saturationVapourPressure: z.enum(['sonntag-1990', 'wmo-8', 'fao-56']),
-  stabilityIteration: z.object({ maxPasses: z.number().int().min(1).max(50), relativeChange: z.number().positive(), absoluteChange: z.number().positive() }),
-  steadyState: z.object({ subIntervals: z.number().int().min(2).max(30), goodPercent: z.number(), usablePercent: z.number() }),
+  stabilityIteration: z.object({
+    maxPasses: z.number().int().min(1).max(50),
+    relativeChange: z.number().positive(),
+    absoluteChange: z.number().positive(),
+  }),
+  steadyState: z.object({
+    subIntervals: z.number().int().min(2).max(30),
+    goodPercent: z.number(),
+    usablePercent: z.number(),
+  }),
   integralTurbulence: z.object({ goodPercent: z.number(), usablePercent: z.number() }),
   uncertainty: z.object({ method: z.literal('finkelstein-sims'), maxLagS: z.number().positive() }),
   storage: z.discriminatedUnion('method', [
@@ -114,7 +126,10 @@ export type RecipeSettings = z.infer<typeof recipeSettingsSchema>;
 export const recipeSchema = z.object({
   name: z.string().trim().min(1).max(80),
   /** Hash of the recipe it was made from, or null. */
-  parentHash: z.string().regex(/^[0-9a-f]{64}$/).nullable(),
+  parentHash: z
+    .string()
+    .regex(/^[0-9a-f]{64}$/)
+    .nullable(),
   settings: recipeSettingsSchema,
 });
 export type Recipe = z.infer<typeof recipeSchema>;
@@ -135,7 +150,12 @@ export const defaultRecipe: Recipe = {
     diagnostics: {
       softRejectedPercent: 10,
       hardRejectedPercent: 30,
-      signalStrength: { relativeDropPoints: 10, referenceDays: 7, referencePercentile: 95, useAbsoluteLimit: true },
+      signalStrength: {
+        relativeDropPoints: 10,
+        referenceDays: 7,
+        referencePercentile: 95,
+        useAbsoluteLimit: true,
+      },
     },
     plausibility: {
       horizontalWindMaxMs: 50,

@@ -109,7 +109,9 @@ export function suggestRoughnessM(canopyHeightM: number): number {
 }
 
 /** True azimuth of the boom [deg, 0–360). */
-export function trueBoomAzimuthDeg(setUp: Pick<SetUp, 'boomAzimuthDeg' | 'azimuthReference' | 'magneticDeclinationDeg'>): number {
+export function trueBoomAzimuthDeg(
+  setUp: Pick<SetUp, 'boomAzimuthDeg' | 'azimuthReference' | 'magneticDeclinationDeg'>,
+): number {
   const shift = setUp.azimuthReference === 'magnetic' ? setUp.magneticDeclinationDeg : 0;
   return (((setUp.boomAzimuthDeg + shift) % 360) + 360) % 360;
 }

@@ -51,7 +51,9 @@ export const healthSchema = z.object({
   /** Only on loopback, only where demonstration data were seeded. */
   demo: z
     .object({
-      signIns: z.array(z.object({ role: z.enum(roles), email: z.string(), password: z.string(), name: z.string() })),
+      signIns: z.array(
+        z.object({ role: z.enum(roles), email: z.string(), password: z.string(), name: z.string() }),
+      ),
     })
     .nullable(),
   /** What start-up is doing, while it is. */
@@ -59,7 +61,12 @@ export const healthSchema = z.object({
 });
 export type Health = z.infer<typeof healthSchema>;
 
-export const memberSchema = z.object({ userId: z.string(), name: z.string(), email: z.string(), role: z.enum(roles) });
+export const memberSchema = z.object({
+  userId: z.string(),
+  name: z.string(),
+  email: z.string(),
+  role: z.enum(roles),
+});
 export type Member = z.infer<typeof memberSchema>;
 
 // ------------------------------------------------------------------------------------------------------------ stations
@@ -94,7 +101,12 @@ export const spineSchema = z.object({
 });
 export type SpineData = z.infer<typeof spineSchema>;
 
-const gradeCounts = z.object({ good: z.number(), usable: z.number(), rejected: z.number(), missing: z.number() });
+const gradeCounts = z.object({
+  good: z.number(),
+  usable: z.number(),
+  rejected: z.number(),
+  missing: z.number(),
+});
 export const gradeSharesSchema = z.record(z.string(), gradeCounts);
 
 export const stationSummarySchema = z.object({
@@ -106,7 +118,14 @@ export const stationSummarySchema = z.object({
   firstScanMs: ms.nullable(),
   lastScanMs: ms.nullable(),
   latestRun: z
-    .object({ id: idSchema, number: z.number().int(), state: z.string(), recipeName: z.string(), stale: z.boolean(), grades: gradeSharesSchema })
+    .object({
+      id: idSchema,
+      number: z.number().int(),
+      state: z.string(),
+      recipeName: z.string(),
+      stale: z.boolean(),
+      grades: gradeSharesSchema,
+    })
     .nullable(),
   spine: spineSchema.nullable(),
 });
@@ -121,7 +140,10 @@ export const createStationSchema = z.object({
 });
 export type CreateStation = z.infer<typeof createStationSchema>;
 
-export const changeStationSchema = z.object({ name: stationSchema.shape.name.optional(), description: z.string().max(500).optional() });
+export const changeStationSchema = z.object({
+  name: stationSchema.shape.name.optional(),
+  description: z.string().max(500).optional(),
+});
 
 export const addSetUpSchema = z.object({
   id: idSchema,
@@ -146,7 +168,14 @@ export type DeletionAccount = z.infer<typeof deletionAccountSchema>;
 
 // ------------------------------------------------------------------------------------------------------------ layouts, raw files
 
-export const layoutRevisionSchema = z.object({ id: idSchema, revision: z.number().int(), hash, layout: layoutSchema, author, createdAtMs: ms });
+export const layoutRevisionSchema = z.object({
+  id: idSchema,
+  revision: z.number().int(),
+  hash,
+  layout: layoutSchema,
+  author,
+  createdAtMs: ms,
+});
 export type LayoutRevision = z.infer<typeof layoutRevisionSchema>;
 export const saveLayoutSchema = z.object({ id: idSchema, layout: layoutSchema });
 
@@ -180,11 +209,19 @@ export const uploadedSchema = z.object({ rawFile: rawFileSchema, duplicate: z.bo
 export type Uploaded = z.infer<typeof uploadedSchema>;
 
 export const checkHashesSchema = z.object({ sha256: z.array(hash).max(2000) });
-export const checkedHashesSchema = z.object({ present: z.array(z.object({ sha256: hash, rawFileId: idSchema })) });
+export const checkedHashesSchema = z.object({
+  present: z.array(z.object({ sha256: hash, rawFileId: idSchema })),
+});
 
 // ------------------------------------------------------------------------------------------------------------ recipes, runs
 
-export const recipeRecordSchema = z.object({ hash, recipe: recipeSchema, author: author.nullable(), createdAtMs: ms, isDefault: z.boolean() });
+export const recipeRecordSchema = z.object({
+  hash,
+  recipe: recipeSchema,
+  author: author.nullable(),
+  createdAtMs: ms,
+  isDefault: z.boolean(),
+});
 export type RecipeRecord = z.infer<typeof recipeRecordSchema>;
 export const saveRecipeSchema = z.object({ recipe: recipeSchema });
 
@@ -274,7 +311,10 @@ export const periodDetailSchema = periodRowSchema.extend({
       summary: z.string(),
     }),
   ),
-  curves: z.record(z.string(), z.object({ x: z.array(z.number()), y: z.array(z.number()), xUnit: z.string(), yUnit: z.string() })),
+  curves: z.record(
+    z.string(),
+    z.object({ x: z.array(z.number()), y: z.array(z.number()), xUnit: z.string(), yUnit: z.string() }),
+  ),
   rawFiles: z.array(z.object({ id: z.string(), fileName: z.string() })),
   previousStartMs: ms.nullable(),
   nextStartMs: ms.nullable(),
@@ -296,11 +336,25 @@ export type SeriesData = z.infer<typeof seriesSchema>;
 // ------------------------------------------------------------------------------------------------------------ events
 
 export const eventSchema = z.discriminatedUnion('type', [
-  z.object({ type: z.literal('raw-file'), stationSlug: z.string(), rawFile: rawFileSchema, share: z.number().nullable() }),
+  z.object({
+    type: z.literal('raw-file'),
+    stationSlug: z.string(),
+    rawFile: rawFileSchema,
+    share: z.number().nullable(),
+  }),
   z.object({ type: z.literal('run'), stationSlug: z.string(), run: runSchema }),
   /** Periods of a run that were just computed. */
-  z.object({ type: z.literal('periods'), stationSlug: z.string(), runId: idSchema, periods: z.array(periodRowSchema) }),
-  z.object({ type: z.literal('station'), stationSlug: z.string(), change: z.enum(['created', 'changed', 'deleted']) }),
+  z.object({
+    type: z.literal('periods'),
+    stationSlug: z.string(),
+    runId: idSchema,
+    periods: z.array(periodRowSchema),
+  }),
+  z.object({
+    type: z.literal('station'),
+    stationSlug: z.string(),
+    change: z.enum(['created', 'changed', 'deleted']),
+  }),
   z.object({ type: z.literal('resync') }),
 ]);
 export type GroupEvent = z.infer<typeof eventSchema>;
