@@ -1,0 +1,3 @@
+export * from './auth';
+export * from './records';
+export * from './results';
