@@ -21,7 +21,8 @@ export class SplitMix64 {
    * @param seed whole number, 0 … 2⁵³ − 1
    */
   constructor(seed: number) {
-    if (!Number.isSafeInteger(seed) || seed < 0) throw new RangeError('SplitMix64: seed must be a whole number from 0');
+    if (!Number.isSafeInteger(seed) || seed < 0)
+      throw new RangeError('SplitMix64: seed must be a whole number from 0');
     this.hi = Math.floor(seed / 4294967296) >>> 0;
     this.lo = seed >>> 0;
   }
@@ -95,7 +96,7 @@ function highProduct(a: number, b: number): number {
   const b1 = b >>> 16;
   const middle = a1 * b0 + ((a0 * b0) >>> 16);
   const middleToo = (middle & 0xffff) + a0 * b1;
-  // `middle` can pass 2³² − 1 by nothing: (2¹⁶ − 1)² + 2¹⁶ − 1 < 2³², so the unsigned shifts are exact.
+  // (2¹⁶ − 1)² + 2¹⁶ − 1 < 2³²: neither middle sum overflows 32 bits, so the unsigned shifts are exact.
   return (a1 * b1 + (middle >>> 16) + (middleToo >>> 16)) | 0;
 }
 
