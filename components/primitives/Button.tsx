@@ -1,8 +1,7 @@
 import { Pressable, View } from 'react-native';
-import { Link } from 'expo-router';
-import type { Href } from 'expo-router';
 import type { ReactNode } from 'react';
 import { face, frame, motion, radius, useTheme, useWide, webStyle } from '../tokens';
+import { linkProps } from './follow-link';
 import { Text } from './Text';
 
 export type ButtonKind = 'primary' | 'secondary' | 'quiet';
@@ -38,16 +37,16 @@ export function Button(props: ButtonProps) {
   const ink = kind === 'primary' ? colour.panel : colour.ink;
   const words = props.busy ? (props.busyLabel ?? `${props.label} …`) : props.label;
 
-  const body = (
+  const pressable = (
     <Pressable
-      role={props.href ? undefined : 'button'}
+      role={props.href && !isOff ? undefined : 'button'}
       aria-label={props.ariaLabel}
       aria-disabled={isOff || undefined}
       aria-busy={props.busy || undefined}
       aria-expanded={props.ariaExpanded}
       disabled={isOff}
       testID={props.testID}
-      onPress={props.href ? undefined : props.onPress}
+      {...(props.href && !isOff ? linkProps(props.href) : { onPress: props.onPress })}
       style={({ hovered, pressed }: { hovered?: boolean; pressed: boolean }) => [
         {
           flexDirection: 'row',
@@ -87,15 +86,6 @@ export function Button(props: ButtonProps) {
       </Text>
     </Pressable>
   );
-
-  const pressable =
-    props.href && !isOff ? (
-      <Link href={props.href as Href} asChild>
-        {body}
-      </Link>
-    ) : (
-      body
-    );
 
   if (!props.disabledReason) return pressable;
   return (

@@ -1,6 +1,6 @@
-import { Link } from 'expo-router';
-import type { Href } from 'expo-router';
+import { Text as NativeText } from 'react-native';
 import { face, useTheme, useWide, webStyle } from '../tokens';
+import { linkProps } from './follow-link';
 
 export interface TextLinkProps {
   label: string;
@@ -15,24 +15,27 @@ export function TextLink({ label, href, standing = false, ariaLabel, size }: Tex
   const { colour } = useTheme();
   const wide = useWide();
   return (
-    <Link
-      href={href as Href}
+    <NativeText
+      {...linkProps(href)}
       aria-label={ariaLabel}
       style={[
-        { color: colour.ink, fontSize: size ?? (standing ? 14 : undefined) },
-        standing
-          ? webStyle({
-              fontFamily: face.label,
-              fontWeight: 600,
-              display: 'inline-flex',
-              alignItems: 'center',
-              minHeight: wide ? 32 : 48,
-            })
-          : webStyle({ fontFamily: face.text }),
-        webStyle({ textDecorationLine: 'underline', textUnderlineOffset: '4px' }),
+        { color: colour.ink },
+        webStyle({
+          fontFamily: standing ? face.label : face.text,
+          fontSize: size ?? (standing ? 14 : 'inherit'),
+          textDecorationLine: 'underline',
+          textUnderlineOffset: '4px',
+        }),
+        standing &&
+          webStyle({
+            fontWeight: 600,
+            display: 'inline-flex',
+            alignItems: 'center',
+            minHeight: wide ? 32 : 48,
+          }),
       ]}
     >
       {label}
-    </Link>
+    </NativeText>
   );
 }

@@ -1,10 +1,9 @@
 import { Pressable, View } from 'react-native';
-import { Link } from 'expo-router';
-import type { Href } from 'expo-router';
 import type { ReactNode } from 'react';
 import { frame, useTheme, useWide, webStyle } from '../tokens';
 import type { GradeValue } from '../tokens';
 import { formatNumber, formatUncertainty } from '../format/numbers';
+import { linkProps } from './follow-link';
 import { GradeMark } from './GradeMark';
 import { Text } from './Text';
 import { UnitText } from './UnitText';
@@ -89,9 +88,9 @@ export function ValueRow(props: ValueRowProps) {
             missing
           </Text>
         ) : props.href ? (
-          <Link href={props.href as Href} aria-label={spoken}>
+          <Pressable aria-label={spoken} hitSlop={8} {...linkProps(props.href)}>
             {figureText}
-          </Link>
+          </Pressable>
         ) : props.onPress ? (
           <Pressable role="button" aria-label={spoken} onPress={props.onPress} hitSlop={8}>
             {figureText}

@@ -1,0 +1,5 @@
+import { NotFoundScreen } from '../components/screens/NotFoundScreen';
+
+export default function NotFound() {
+  return <NotFoundScreen />;
+}

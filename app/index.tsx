@@ -1,0 +1,5 @@
+import { StartScreen } from '../components/screens/StartScreen';
+
+export default function Start() {
+  return <StartScreen />;
+}

@@ -1,0 +1,5 @@
+import { PartsScreen } from '../components/screens/PartsScreen';
+
+export default function Parts() {
+  return <PartsScreen />;
+}
