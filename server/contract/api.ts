@@ -29,7 +29,10 @@ import { roles } from './roles';
  *   GET    G/runs/:id/export         ?format=exchange|plain&fromMs&toMs
  *   GET    G/stations/:station/spine ?run=&fromMs&toMs&bins=
  *   GET    G/jobs                                              what is working or waiting
- *   GET    G/events                                            server-sent events (JobEvent, RunEvent, RawFileEvent)
+ *   GET    G/events                                            server-sent events (eventSchema as the data of `message` events)
+ *
+ * Lists answer as an object with the plural's name (see `listSchemas`), single things as themselves, a creation with 201 and the thing,
+ * a deletion with 204.
  */
 
 export const idSchema = z.uuid();
@@ -358,3 +361,27 @@ export const eventSchema = z.discriminatedUnion('type', [
   z.object({ type: z.literal('resync') }),
 ]);
 export type GroupEvent = z.infer<typeof eventSchema>;
+
+// ------------------------------------------------------------------------------------------------------------ lists
+
+export const listSchemas = {
+  members: z.object({ members: z.array(memberSchema) }),
+  stations: z.object({ stations: z.array(stationSummarySchema) }),
+  setUps: z.object({ setUps: z.array(setUpRevisionSchema) }),
+  layouts: z.object({ layouts: z.array(layoutRevisionSchema) }),
+  rawFiles: z.object({ rawFiles: z.array(rawFileSchema) }),
+  recipes: z.object({ recipes: z.array(recipeRecordSchema) }),
+  runs: z.object({ runs: z.array(runSchema) }),
+  periods: z.object({ periods: z.array(periodRowSchema) }),
+  jobs: z.object({
+    jobs: z.array(
+      z.object({
+        id: z.string(),
+        kind: z.enum(['read-raw-file', 'compute-run']),
+        state: z.enum(['waiting', 'working']),
+        label: z.string(),
+        share: z.number().nullable(),
+      }),
+    ),
+  }),
+} as const;
