@@ -8,31 +8,43 @@ import { roles } from './roles';
  * What travels between client and server. Ids are made by the client (UUID), so that a repeated request is harmless. Times are
  * ms since 1970-01-01 UTC in numbers named …Ms, or ISO 8601 in UTC. The group's slug is in every address.
  *
- * Address book (G = /api/groups/:group):
- *   GET    /api/health                                        alive, version, demo sign-ins on loopback
- *   GET    /api/me                                            who am I, which groups, which role
- *   GET    G/members
- *   GET    G/stations                POST G/stations           list with spines · create with system and first set-up
- *   GET    G/stations/:station       PATCH, DELETE             :station is the slug
- *   GET    G/stations/:station/deletion                        what would go and what would stay
- *   GET    G/stations/:station/set-ups   POST                  append-only revisions
- *   GET    G/stations/:station/layouts   POST
- *   GET    G/stations/:station/raw-files POST (multipart)      list · bring in
- *   POST   G/stations/:station/raw-files/check                 which of these hashes are here already
- *   GET    G/raw-files/:id           POST G/raw-files/:id/withdraw · /restore · /reread   GET G/raw-files/:id/content
- *   GET    G/recipes                 POST G/recipes
- *   GET    G/stations/:station/runs  POST                      list · start
- *   GET    G/runs/:id                DELETE                    GET G/runs/:id/deletion   POST G/runs/:id/cancel
- *   GET    G/runs/:id/series         ?quantities=a,b&fromMs&toMs
- *   GET    G/runs/:id/periods        ?fromMs&toMs
- *   GET    G/runs/:id/periods/:startMs
- *   GET    G/runs/:id/export         ?format=exchange|plain&fromMs&toMs
- *   GET    G/stations/:station/spine ?run=&fromMs&toMs&bins=
- *   GET    G/jobs                                              what is working or waiting
- *   GET    G/events                                            server-sent events (eventSchema as the data of `message` events)
- *
- * Lists answer as an object with the plural's name (see `listSchemas`), single things as themselves, a creation with 201 and the thing,
- * a deletion with 204.
+ * Address book (G = /api/groups/:group), with what each answers; lists are bare arrays:
+ *   GET    /api/health                          → Health           alive, version, demo sign-ins on loopback
+ *   GET    /api/me                              → Me               who am I, which groups, which role
+ *   GET    G/members                            → Member[]
+ *   GET    G/stations                           → StationSummary[] with spines
+ *   POST   G/stations                           → 201 StationSummary; body CreateStation; 200 when repeated
+ *   GET    G/stations/:station                  → StationSummary   :station is the slug
+ *   PATCH  G/stations/:station                  → StationSummary; body changeStationSchema
+ *   DELETE G/stations/:station?confirm=WORD     → 204              WORD is the account's confirmWord
+ *   GET    G/stations/:station/deletion         → DeletionAccount  what would go and what would stay
+ *   GET    G/stations/:station/set-ups          → SetUpRevision[]  newest first, append-only
+ *   POST   G/stations/:station/set-ups          → 201 setUpAddedSchema; body AddSetUp; 200 when repeated
+ *   GET    G/stations/:station/layouts          → LayoutRevision[] newest first
+ *   POST   G/stations/:station/layouts          → 201 LayoutRevision; body saveLayoutSchema; 200 with the existing one when equal
+ *   GET    G/stations/:station/raw-files        → RawFile[]
+ *   POST   G/stations/:station/raw-files        → 201 Uploaded, 200 for a duplicate; multipart: id, layoutId, then one file;
+ *                                                 ?compute=RECIPE_HASH starts a run when all is read
+ *   POST   G/stations/:station/raw-files/check  → checkedHashesSchema; which of these hashes are here already
+ *   GET    G/raw-files/:id                      → RawFile
+ *   POST   G/raw-files/:id/withdraw · /restore  → RawFile
+ *   POST   G/raw-files/:id/reread               → RawFile; body rereadSchema
+ *   GET    G/raw-files/:id/content              → the bytes as they were brought in
+ *   GET    G/recipes                            → RecipeRecord[]
+ *   POST   G/recipes                            → 201 RecipeRecord; body saveRecipeSchema; 200 with the existing one when equal
+ *   GET    G/stations/:station/runs             → Run[]            newest first
+ *   POST   G/stations/:station/runs             → 201 Run; body StartRun; 200 when repeated
+ *   GET    G/runs/:id                           → Run
+ *   DELETE G/runs/:id?confirm=WORD              → 204
+ *   GET    G/runs/:id/deletion                  → DeletionAccount
+ *   POST   G/runs/:id/cancel                    → Run
+ *   GET    G/runs/:id/series?quantities=a,b&fromMs&toMs  → SeriesData
+ *   GET    G/runs/:id/periods?fromMs&toMs       → PeriodRow[]
+ *   GET    G/runs/:id/periods/:startMs          → PeriodDetail
+ *   GET    G/runs/:id/export?format=exchange|plain&fromMs&toMs  → text/csv as an attachment
+ *   GET    G/stations/:station/spine?run&fromMs&toMs&bins       → SpineData
+ *   GET    G/jobs                               → Jobs             what is working or waiting
+ *   GET    G/events                             server-sent events, each one GroupEvent as JSON in `data`
  */
 
 export const idSchema = z.uuid();
@@ -211,6 +223,9 @@ export const uploadFieldsSchema = z.object({ id: idSchema, layoutId: idSchema })
 export const uploadedSchema = z.object({ rawFile: rawFileSchema, duplicate: z.boolean() });
 export type Uploaded = z.infer<typeof uploadedSchema>;
 
+/** Reads a file again, with another layout when one is given. */
+export const rereadSchema = z.object({ layoutId: idSchema.optional() });
+
 export const checkHashesSchema = z.object({ sha256: z.array(hash).max(2000) });
 export const checkedHashesSchema = z.object({
   present: z.array(z.object({ sha256: hash, rawFileId: idSchema })),
@@ -262,6 +277,10 @@ export const startRunSchema = z.object({
   toMs: ms.nullable(),
 });
 export type StartRun = z.infer<typeof startRunSchema>;
+
+/** What is working or waiting in a group. */
+export const jobsSchema = z.object({ rawFiles: z.array(rawFileSchema), runs: z.array(runSchema) });
+export type Jobs = z.infer<typeof jobsSchema>;
 
 // ------------------------------------------------------------------------------------------------------------ results
 
