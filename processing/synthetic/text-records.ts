@@ -1,6 +1,5 @@
-import type { WrittenPeriod } from './period';
+import type { WrittenPeriod, WrittenChannel } from './period';
 import { writtenChannels } from './period';
-import type { WrittenChannel } from './period';
 
 /** Invented records as delimited text, the way a logger writes them: one row per scan, stamp first. */
 
