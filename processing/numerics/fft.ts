@@ -291,10 +291,10 @@ function createSmoothFft(n: number): Fft {
   const scratchIm = new Float64Array(n);
 
   function transform(re: Float64Array, im: Float64Array): void {
-    let xr = re;
-    let xi = im;
-    let yr = scratchRe;
-    let yi = scratchIm;
+    let xr: Float64Array = re;
+    let xi: Float64Array = im;
+    let yr: Float64Array = scratchRe;
+    let yi: Float64Array = scratchIm;
     for (const stage of stages) {
       if (stage.radix === 4) passFour(stage, xr, xi, yr, yi);
       else if (stage.radix === 5) passFive(stage, xr, xi, yr, yi);
