@@ -120,6 +120,9 @@ export function addSkipped(
   return addLedger(state, { step, version, parameters, changes: {}, summary: why });
 }
 
+/** What the ledger says of every step that finds the period stopped. */
+export const alreadyStopped = 'Not done: the period was stopped before.';
+
 /**
  * Grade of a value above two limits; a value on a limit is still inside it.
  *
@@ -171,4 +174,31 @@ export function formatPercent(share: number): string {
 /** "1 sample", "2 samples". */
 export function countOf(count: number, singular: string, plural = `${singular}s`): string {
   return `${formatNumber(count)} ${count === 1 ? singular : plural}`;
+}
+
+/** A length of time as it stands in a sentence: "0.35 s", "12 s", "4 min 3 s". */
+export function formatDuration(seconds: number): string {
+  if (!Number.isFinite(seconds)) return 'no value';
+  if (seconds < 10) return `${formatNumber(seconds, seconds < 1 ? 2 : 1)} s`;
+  const whole = Math.round(seconds);
+  if (whole < 60) return `${whole} s`;
+  const minutes = Math.floor(whole / 60);
+  const rest = whole % 60;
+  return rest === 0 ? `${formatNumber(minutes)} min` : `${formatNumber(minutes)} min ${rest} s`;
+}
+
+/** Where in a period: "at 12 min 4 s". */
+export function formatPlace(secondsFromStart: number): string {
+  return `at ${formatDuration(secondsFromStart)} after its start`;
+}
+
+/** "u, v and w". */
+export function listOf(words: readonly string[]): string {
+  if (words.length < 2) return words.join('');
+  return `${words.slice(0, -1).join(', ')} and ${words[words.length - 1]}`;
+}
+
+/** A label at the beginning of a sentence: "Vertical wind". */
+export function capitalised(label: string): string {
+  return label.charAt(0).toUpperCase() + label.slice(1);
 }

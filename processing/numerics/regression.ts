@@ -1,0 +1,77 @@
+/** A straight line through a series: value at index i = valueAtCentre + slope × (i − centre). */
+export interface Line {
+  /** Valid values. */
+  n: number;
+  /** Unit of the values per sample. */
+  slope: number;
+  /** Mean index of the valid values. */
+  centre: number;
+  /** Value of the line there: the mean of the valid values. */
+  valueAtCentre: number;
+}
+
+/**
+ * Least-squares line of a series over its sample index.
+ *
+ * b = Σ(t − t̄)(x − x̄) / Σ(t − t̄)², a line through (t̄, x̄)
+ *
+ * @param values Float64Array, not mutated; NaN = missing
+ * @returns the line; slope NaN with fewer than two valid values, everything NaN with none
+ * @assumes samples evenly spaced
+ * @reference definition; time is centred first, so that line and mean are orthogonal
+ * @deviates none
+ */
+export function leastSquaresLine(values: Float64Array): Line {
+  const length = values.length;
+  const middle = (length - 1) / 2;
+  let n = 0;
+  let origin = NaN;
+  let sumX = 0;
+  let sumT = 0;
+  let sumTT = 0;
+  let sumTX = 0;
+  for (let i = 0; i < length; i++) {
+    const value = values[i];
+    if (value !== value) continue;
+    if (n === 0) origin = value;
+    const x = value - origin;
+    const t = i - middle;
+    n++;
+    sumX += x;
+    sumT += t;
+    sumTT += t * t;
+    sumTX += t * x;
+  }
+  if (n === 0) return { n, slope: NaN, centre: NaN, valueAtCentre: NaN };
+  const spread = sumTT - (sumT * sumT) / n;
+  return {
+    n,
+    slope: n < 2 ? NaN : (sumTX - (sumT * sumX) / n) / spread,
+    centre: middle + sumT / n,
+    valueAtCentre: origin + sumX / n,
+  };
+}
+
+/** Value of a line at a sample index. */
+export function lineAt(line: Line, index: number): number {
+  return line.valueAtCentre + line.slope * (index - line.centre);
+}
+
+/**
+ * Takes the least-squares line out of a series.
+ *
+ * @param values Float64Array, not mutated; NaN = missing
+ * @param into receives the residuals, same length; NaN stays NaN. May be `values` itself
+ * @returns the line that was taken out; with fewer than two valid values only the mean is
+ * @assumes samples evenly spaced
+ * @reference definition
+ * @deviates none
+ */
+export function removeLine(values: Float64Array, into: Float64Array): Line {
+  const line = leastSquaresLine(values);
+  const slope = line.n < 2 ? 0 : line.slope;
+  for (let i = 0; i < values.length; i++) {
+    into[i] = values[i] - line.valueAtCentre - slope * (i - line.centre);
+  }
+  return line;
+}
