@@ -5,7 +5,7 @@ import { Text } from './Text';
 
 export interface DataColumn<Row> {
   key: string;
-  head: string;
+  head: ReactNode;
   /** Figures align right. */
   align?: 'left' | 'right';
   cell: (row: Row) => ReactNode;
