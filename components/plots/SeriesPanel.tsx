@@ -1,4 +1,4 @@
-import { useEffect, useMemo, useRef, useState } from 'react';
+import { useEffect, useLayoutEffect, useMemo, useRef, useState } from 'react';
 import { View } from 'react-native';
 import uPlot from 'uplot';
 import 'uplot/dist/uPlot.min.css';
@@ -6,7 +6,6 @@ import { quantity } from '../../processing/catalogue';
 import { formatNumber, formatUncertainty } from '../format/numbers';
 import { GradeMark, Text } from '../primitives';
 import { face, traceDashes, useTheme, webStyle, withAlpha } from '../tokens';
-import type { GradeValue, ThemeColours } from '../tokens';
 import { drawBehind, drawMarks } from './panel-drawing';
 import type { PanelScene } from './panel-drawing';
 import { axisRange, decimalsOf, describePanel, gradeValue } from './series-plot';
@@ -44,30 +43,26 @@ export function SeriesPanel(props: SeriesPanelProps) {
   const entry = quantity(series.key);
   const traceColour = colour.traces[trace % colour.traces.length] ?? colour.ink;
   const dash = traceDashes[trace % traceDashes.length] ?? [];
-  const scene = useRef<PanelScene>({
-    series,
-    nights: props.nights,
-    colour,
-    fromMs: props.window.fromMs,
-    toMs: props.window.toMs,
-    ticksMs: props.ticksMs,
-    showTruth: props.showTruth === true,
-  });
-  scene.current = {
-    series,
-    nights: props.nights,
-    colour,
-    fromMs: props.window.fromMs,
-    toMs: props.window.toMs,
-    ticksMs: props.ticksMs,
-    showTruth: props.showTruth === true,
-  };
   const range = useMemo(
     () => axisRange(series, props.window.fromMs, props.window.toMs),
     [series, props.window.fromMs, props.window.toMs],
   );
-  const rangeRef = useRef(range);
-  rangeRef.current = range;
+  const showTruth = props.showTruth === true;
+  const current: PanelScene & { range: [number, number] } = {
+    series,
+    nights: props.nights,
+    colour,
+    fromMs: props.window.fromMs,
+    toMs: props.window.toMs,
+    ticksMs: props.ticksMs,
+    showTruth,
+    range,
+  };
+  const scene = useRef(current);
+  // The hooks of one uPlot instance always see the newest scene; layout effects run before the effects below.
+  useLayoutEffect(() => {
+    scene.current = current;
+  });
   const data = useMemo<uPlot.AlignedData>(
     () => [series.x, series.line, series.upper, series.lower, series.truth ?? series.x.map(() => null)],
     [series],
@@ -86,7 +81,7 @@ export function SeriesPanel(props: SeriesPanelProps) {
         padding: [6, 1, 6, 0],
         scales: {
           x: { time: false, range: () => [scene.current.fromMs / 1000, scene.current.toMs / 1000] },
-          y: { range: () => rangeRef.current },
+          y: { range: () => scene.current.range },
         },
         axes: [
           { show: false },
@@ -110,7 +105,7 @@ export function SeriesPanel(props: SeriesPanelProps) {
             stroke: withAlpha(colour.ink, 0.55),
             width: 1,
             points: { show: false },
-            show: props.showTruth === true,
+            show: showTruth,
           },
         ],
         bands: [{ series: [2, 3], fill: withAlpha(traceColour, 0.24) }],
@@ -129,7 +124,7 @@ export function SeriesPanel(props: SeriesPanelProps) {
     };
     // A new instance only where options that uPlot cannot change are concerned.
     // eslint-disable-next-line react-hooks/exhaustive-deps
-  }, [traceColour, axisWidth, props.showTruth, colour]);
+  }, [traceColour, axisWidth, showTruth, colour]);
 
   useEffect(() => plotRef.current?.setSize({ width, height }), [width, height]);
   useEffect(() => plotRef.current?.setData(data), [data]);
