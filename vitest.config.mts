@@ -2,8 +2,11 @@ import { defineConfig } from 'vitest/config';
 
 const shared = {
   resolve: {
-    alias: [{ find: /^react-native$/, replacement: 'react-native-web' }],
-    extensions: ['.web.tsx', '.web.ts', '.tsx', '.ts', '.mts', '.mjs', '.js', '.json'],
+    alias: [
+      { find: /^react-native$/, replacement: 'react-native-web' },
+      { find: /^react-native-svg$/, replacement: 'react-native-svg/lib/module/ReactNativeSVG.web.js' },
+    ],
+    extensions: ['.web.tsx', '.web.ts', '.web.js', '.tsx', '.ts', '.mts', '.mjs', '.js', '.json'],
   },
   define: { __DEV__: 'true', 'process.env.EXPO_OS': '"web"' },
 };

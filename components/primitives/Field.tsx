@@ -1,4 +1,4 @@
-import { useEffect, useId, useState } from 'react';
+import { useId, useState } from 'react';
 import { View } from 'react-native';
 import { Controller } from 'react-hook-form';
 import type { Control, FieldPath, FieldValues } from 'react-hook-form';
@@ -39,8 +39,8 @@ interface FieldFrameProps {
 function FieldFrame({ ids, label, help, error, optional, mark, children }: FieldFrameProps) {
   const { colour } = useTheme();
   return (
-    <View style={{ gap: 6, alignSelf: 'stretch' }}>
-      <View style={{ flexDirection: 'row', gap: 8, alignItems: 'baseline' }}>
+    <View style={{ alignSelf: 'stretch' }}>
+      <View style={{ flexDirection: 'row', gap: 8, alignItems: 'baseline', marginBottom: 6 }}>
         <label id={ids.label} htmlFor={ids.input}>
           <Text variant="label">{label}</Text>
         </label>
@@ -56,7 +56,7 @@ function FieldFrame({ ids, label, help, error, optional, mark, children }: Field
         ) : null}
       </View>
       {children}
-      <div id={ids.error} role="alert">
+      <div id={ids.error} role="alert" style={{ marginTop: error ? 6 : 0 }}>
         {error ? (
           <Text variant="small" strong>
             {error}
@@ -64,7 +64,7 @@ function FieldFrame({ ids, label, help, error, optional, mark, children }: Field
         ) : null}
       </div>
       {help ? (
-        <div id={ids.help}>
+        <div id={ids.help} style={{ marginTop: 6 }}>
           <Text variant="small" soft>
             {help}
           </Text>
@@ -124,7 +124,7 @@ export interface TextInputProps extends CommonFieldProps {
 }
 
 /** A text input without a form around it. */
-export function TextInput(props: TextInputProps) {
+export function TextInput({ inputRef, ...props }: TextInputProps) {
   const ids = useFieldIds();
   const style = useInputStyle(props.error !== undefined);
   const shared = {
@@ -155,7 +155,7 @@ export function TextInput(props: TextInputProps) {
       {props.lines && props.lines > 1 ? (
         <textarea
           {...shared}
-          ref={props.inputRef}
+          ref={inputRef}
           rows={props.lines}
           style={{
             ...style,
@@ -170,7 +170,7 @@ export function TextInput(props: TextInputProps) {
         <div style={{ position: 'relative' }}>
           <input
             {...shared}
-            ref={props.inputRef}
+            ref={inputRef}
             type={props.type ?? 'text'}
             style={{ ...style, ...figureStyle, paddingRight: props.trailing ? 84 : 14 }}
           />
@@ -235,20 +235,15 @@ export interface NumberInputProps extends CommonFieldProps {
 }
 
 /** A number with its unit; takes comma or dot, and any of the minus signs. */
-export function NumberInput(props: NumberInputProps) {
+export function NumberInput({ inputRef, ...props }: NumberInputProps) {
   const ids = useFieldIds();
   const { colour } = useTheme();
   const error = props.error ?? (Number.isNaN(props.value) ? 'Write a number, for example 3.2.' : undefined);
   const style = useInputStyle(error !== undefined);
-  const [text, setText] = useState(() => formatPlain(props.value));
-
-  // follow the form when it is reset, but leave half-written text ("3.", "-") alone
-  useEffect(() => {
-    setText((current) => {
-      const typed = parseDecimal(current);
-      return Object.is(typed, props.value) || Number.isNaN(props.value) ? current : formatPlain(props.value);
-    });
-  }, [props.value]);
+  const [typed, setTyped] = useState('');
+  // what was typed stays as long as it means the form's value ("3.", "4,25"); a reset form writes its own
+  const isTypedStill = Object.is(parseDecimal(typed), props.value) || Number.isNaN(props.value);
+  const text = isTypedStill ? typed : formatPlain(props.value);
 
   return (
     <FieldFrame
@@ -263,7 +258,7 @@ export function NumberInput(props: NumberInputProps) {
         <input
           id={ids.input}
           name={props.name}
-          ref={props.inputRef}
+          ref={inputRef}
           type="text"
           inputMode="decimal"
           autoComplete="off"
@@ -273,7 +268,7 @@ export function NumberInput(props: NumberInputProps) {
           aria-describedby={describedBy(ids, props.help, error)}
           aria-invalid={error ? true : undefined}
           onChange={(event) => {
-            setText(event.target.value);
+            setTyped(event.target.value);
             props.onChange(parseDecimal(event.target.value));
           }}
           onBlur={props.onBlur}
@@ -347,7 +342,7 @@ export interface ChoiceInputProps<Value extends string = string> extends CommonF
 }
 
 /** One of many: a native select. */
-export function ChoiceInput<Value extends string>(props: ChoiceInputProps<Value>) {
+export function ChoiceInput<Value extends string>({ inputRef, ...props }: ChoiceInputProps<Value>) {
   const ids = useFieldIds();
   const style = useInputStyle(props.error !== undefined);
   return (
@@ -362,7 +357,7 @@ export function ChoiceInput<Value extends string>(props: ChoiceInputProps<Value>
       <select
         id={ids.input}
         name={props.name}
-        ref={props.inputRef}
+        ref={inputRef}
         value={props.value}
         disabled={props.disabled}
         aria-labelledby={ids.label}
@@ -484,6 +479,7 @@ export function SegmentChoice<Value extends string>(props: SegmentChoiceProps<Va
                 className="gb-unseen"
                 name={base}
                 value={option.value}
+                aria-label={isFormer ? `${option.label}, was` : undefined}
                 checked={isOn}
                 disabled={props.disabled || option.disabled}
                 onChange={() => props.onChange(option.value)}
@@ -555,12 +551,12 @@ export interface CheckInputProps extends Omit<CommonFieldProps, 'optional'> {
   inputRef?: (element: HTMLInputElement | null) => void;
 }
 
-export function CheckInput(props: CheckInputProps) {
+export function CheckInput({ inputRef, ...props }: CheckInputProps) {
   const { colour } = useTheme();
   const wide = useWide();
   const ids = useFieldIds();
   return (
-    <View style={{ gap: 2, alignSelf: 'stretch' }}>
+    <View style={{ alignSelf: 'stretch' }}>
       <label
         style={{
           display: 'inline-flex',
@@ -573,7 +569,7 @@ export function CheckInput(props: CheckInputProps) {
         <input
           id={ids.input}
           name={props.name}
-          ref={props.inputRef}
+          ref={inputRef}
           type="checkbox"
           checked={props.value}
           disabled={props.disabled}

@@ -5,113 +5,19 @@ import { face, gradeColour, gradeSpoken, useTheme } from '../tokens';
 import type { GradeValue } from '../tokens';
 import { formatNumber } from '../format/numbers';
 import { GradeShape } from './GradeMark';
+import { isNumber, limitWords, rulerSpan, rulerTicks, trimFigure } from './limit-ruler';
+import type { RulerInput } from './limit-ruler';
 
-export interface LimitBarProps {
+export interface LimitBarProps extends RulerInput {
   /** What is measured, for the spoken text: "Steady-state deviation". */
   label: string;
-  /** NaN or null draws the ruler without a mark. */
-  value: number | null;
   unit?: string;
-  decimals?: number;
   /** The mark the value gets. */
   grade: GradeValue;
-  /** Good up to here. */
-  softHigh?: number | null;
-  /** Rejected above. */
-  hardHigh?: number | null;
-  /** Good down to here. */
-  softLow?: number | null;
-  /** Rejected below. */
-  hardLow?: number | null;
-  /** A limit of the parent recipe, dashed. */
-  parentLimit?: number | null;
   /** Words of the limit, instead of "limit 30" / "at least 90" / "−2.0 to 2.0". */
   limitText?: string;
-  /** An informative limit ("usual up to 15"): changes no grade. */
-  usual?: boolean;
-  /** Ends of the ruler; chosen from limits and value when left out. */
-  from?: number;
-  to?: number;
   /** px; otherwise as wide as the container. */
   width?: number;
-}
-
-function isNumber(value: number | null | undefined): value is number {
-  return value !== null && value !== undefined && Number.isFinite(value);
-}
-
-const niceSteps = [1, 2, 2.5, 5, 10];
-
-/** Ticks at a round step, at most ten over the ruler. */
-export function rulerTicks(from: number, to: number): number[] {
-  const span = to - from;
-  if (!(span > 0)) return [];
-  const rough = span / 8;
-  const magnitude = 10 ** Math.floor(Math.log10(rough));
-  const step = (niceSteps.find((nice) => nice * magnitude >= rough) ?? 10) * magnitude;
-  const ticks: number[] = [];
-  for (let index = Math.ceil(from / step - 1e-9); index * step <= to + step * 1e-9; index += 1)
-    ticks.push(index * step);
-  return ticks;
-}
-
-/** Ends of a ruler on which limits and value all have room. */
-export function rulerSpan(props: LimitBarProps): { from: number; to: number } {
-  const { softHigh, hardHigh, softLow, hardLow, parentLimit, value } = props;
-  const limits = [softHigh, hardHigh, softLow, hardLow, parentLimit].filter(isNumber);
-  const high = Math.max(0, ...limits);
-  const low = Math.min(0, ...limits);
-  const reach = Math.max(high - low, 1e-9);
-  const isHighSided = isNumber(softHigh) || isNumber(hardHigh);
-  const isLowSided = isNumber(softLow) || isNumber(hardLow);
-  let to =
-    high + reach * (isHighSided && !isLowSided && !isNumber(hardHigh) && !isNumber(parentLimit) ? 1 : 0.25);
-  let from = isLowSided && isHighSided ? low - reach * 0.25 : low < 0 ? low - reach * 0.25 : 0;
-  if (isNumber(value)) {
-    // a value far outside is drawn at the end of the ruler, not at the price of the limits' legibility
-    to = Math.max(to, Math.min(value + reach * 0.1, high + reach * 2));
-    from = Math.min(from, Math.max(value - reach * 0.1, low - reach * 2));
-  }
-  return { from: props.from ?? from, to: props.to ?? to };
-}
-
-function limitWords(props: LimitBarProps): { at: number; text: string }[] {
-  const { softHigh, hardHigh, softLow, hardLow, usual } = props;
-  const decimals = props.decimals ?? 0;
-  const figure = (value: number): string => trimFigure(value, decimals);
-  if (isNumber(softLow) && isNumber(softHigh)) {
-    return [{ at: (softLow + softHigh) / 2, text: `${figure(softLow)} to ${figure(softHigh)}` }];
-  }
-  const words: { at: number; text: string }[] = [];
-  if (isNumber(softHigh)) {
-    const text = usual ? 'usual up to' : isNumber(hardHigh) ? 'good up to' : 'limit';
-    words.push({ at: softHigh, text: `${text} ${figure(softHigh)}` });
-  }
-  if (isNumber(hardHigh)) {
-    words.push({
-      at: hardHigh,
-      text: `${isNumber(softHigh) ? 'rejected above' : 'limit'} ${figure(hardHigh)}`,
-    });
-  }
-  if (isNumber(softLow)) {
-    const text = usual ? 'usually at least' : isNumber(hardLow) ? 'good from' : 'at least';
-    words.push({ at: softLow, text: `${text} ${figure(softLow)}` });
-  }
-  if (isNumber(hardLow)) {
-    words.push({
-      at: hardLow,
-      text: `${isNumber(softLow) ? 'rejected below' : 'at least'} ${figure(hardLow)}`,
-    });
-  }
-  return words;
-}
-
-/** Limits are round numbers: written with as many decimals as they need, at most those of the value + 1. */
-function trimFigure(value: number, decimals: number): string {
-  for (let digits = 0; digits <= decimals + 1; digits += 1) {
-    if (Math.abs(Number(value.toFixed(digits)) - value) < 1e-9) return formatNumber(value, digits);
-  }
-  return formatNumber(value, decimals + 1);
 }
 
 /**
@@ -149,7 +55,7 @@ export function LimitBar(props: LimitBarProps) {
   // 12 px mono is 7.2 px a character; labels that would touch go to a second line
   const labels = [
     ...(props.limitText
-      ? [{ at: softHigh ?? hardHigh ?? softLow ?? hardLow ?? from, text: props.limitText }]
+      ? [{ at: words.length === 1 ? words[0].at : (allowedLow + allowedHigh) / 2, text: props.limitText }]
       : words),
     ...(parentText && isNumber(parentLimit) ? [{ at: parentLimit, text: parentText }] : []),
   ].map((label) => {

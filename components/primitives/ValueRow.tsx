@@ -65,19 +65,19 @@ export function ValueRow(props: ValueRowProps) {
       style={{
         flexDirection: 'row',
         alignItems: 'center',
-        gap: 8,
+        gap: wide ? 8 : 6,
         minHeight: wide ? 36 : frame.phoneTarget,
         paddingVertical: 4,
         borderBottomWidth: 1,
         borderBottomColor: colour.hair,
       }}
     >
-      <View role="rowheader" style={{ flexBasis: 64, flexShrink: 0, flexGrow: 1 }}>
+      <View role="rowheader" style={{ flexBasis: wide ? 64 : 40, flexShrink: 1, flexGrow: 1, minWidth: 0 }}>
         <Text variant="label">
           <UnitText>{props.label}</UnitText>
         </Text>
       </View>
-      <View role="cell" style={{ width: 76, flexDirection: 'row', justifyContent: 'flex-end', gap: 6 }}>
+      <View role="cell" style={{ minWidth: 68, flexDirection: 'row', justifyContent: 'flex-end', gap: 6 }}>
         {props.formerValue !== undefined && props.formerValue !== null ? (
           <Text variant="figure" size={13} soft struck>
             {formatNumber(props.formerValue, decimals)}
@@ -99,17 +99,17 @@ export function ValueRow(props: ValueRowProps) {
           figureText
         )}
       </View>
-      <View role="cell" style={{ width: 64 }}>
+      <View role="cell" style={{ minWidth: 60 }}>
         <Text variant="figure" soft align="right">
           {hasValue && props.uncertainty !== undefined ? formatUncertainty(props.uncertainty, decimals) : ''}
         </Text>
       </View>
-      <View role="cell" style={{ width: 92 }}>
+      <View role="cell" style={{ width: 86 }}>
         <Text variant="small" soft nowrap>
           {props.unit ? <UnitText>{props.unit}</UnitText> : null}
         </Text>
       </View>
-      <View role="cell" style={{ width: 34, alignItems: 'flex-end' }}>
+      <View role="cell" style={{ width: 30, alignItems: 'flex-end' }}>
         {props.grade !== undefined ? <GradeMark grade={props.grade} /> : null}
       </View>
     </View>

@@ -6,6 +6,7 @@ export * from './Field';
 export * from './GradeMark';
 export * from './GradeShares';
 export * from './HashText';
+export * from './grade-counts';
 export * from './Icon';
 export * from './IconButton';
 export * from './LimitBar';

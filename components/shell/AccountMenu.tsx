@@ -1,8 +1,7 @@
-import { useState } from 'react';
+import { useContext, useState } from 'react';
 import { Pressable, View } from 'react-native';
 import { router } from 'expo-router';
 import { useQueryClient } from '@tanstack/react-query';
-import { useContext } from 'react';
 import { authClient } from '../data/auth-client';
 import { useMe } from '../data/me';
 import { ClockContext } from '../format/useClock';
