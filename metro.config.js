@@ -9,7 +9,7 @@ config.resolver.assetExts.push('woff2');
 // Anchored to the project root: packages have folders of the same names. server/contract is shared with the client.
 const escapedRoot = root.replace(/[/\\^$.*+?()[\]{}|-]/g, '\\$&');
 const blocked = [
-  'server/(?!contract/)',
+  'server/(?!contract(?:/|$))',
   'db/',
   'drizzle/',
   'tests/',
