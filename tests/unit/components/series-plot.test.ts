@@ -1,0 +1,67 @@
+import { describe, expect, it } from 'vitest';
+import { axisRange, gapsOf, periodIndexAt, plotSeries } from '../../../components/plots/series-plot';
+import type { SeriesData } from '../../../server/contract/api';
+
+const half = 1_800_000;
+
+/** Five half hours; the third is missing as a row (a hole), the fourth has no value, the second is rejected. Made by hand. */
+const data: SeriesData = {
+  runId: '00000000-0000-4000-8000-000000000001',
+  startMs: [0, half, 3 * half, 4 * half],
+  endMs: [half, 2 * half, 4 * half, 5 * half],
+  quantities: {
+    co2Flux: [-10e-6, 30e-6, null, -4e-6],
+    co2FluxRandom: [1e-6, 2e-6, null, null],
+  },
+  grades: { co2Flux: [0, 2, null, 1] },
+  truth: null,
+};
+
+describe('a quantity cut for plotting', () => {
+  const series = plotSeries(data, 'co2Flux');
+
+  it('shows the unit people read', () => {
+    expect(series.value[0]).toBeCloseTo(-10, 12);
+    expect(series.upper[0]).toBeCloseTo(-9, 12);
+    expect(series.lower[0]).toBeCloseTo(-11, 12);
+  });
+
+  it('never joins the line across a rejected value, a missing one or a hole', () => {
+    expect(series.startMs).toEqual([0, half, 2 * half, 3 * half, 4 * half]);
+    expect(series.line.map((value) => value === null)).toEqual([false, true, true, true, false]);
+    expect(series.value[1]).toBeCloseTo(30, 12);
+  });
+
+  it('gives a rejected value no band', () => {
+    expect(series.upper[1]).toBeNull();
+  });
+
+  it('names holes and missing values as one gap', () => {
+    expect(gapsOf(series, 0, 5 * half)).toEqual([{ fromMs: 2 * half, toMs: 4 * half }]);
+  });
+
+  it('calls what lies beyond the recorded span a gap', () => {
+    expect(gapsOf(series, -half, 6 * half)).toEqual([
+      { fromMs: -half, toMs: 0 },
+      { fromMs: 2 * half, toMs: 4 * half },
+      { fromMs: 5 * half, toMs: 6 * half },
+    ]);
+  });
+
+  it('keeps a far rejected value from stretching the axis, and zero in sight', () => {
+    const [low, high] = axisRange(series, 0, 5 * half);
+    expect(low).toBeLessThan(-11);
+    expect(high).toBeGreaterThanOrEqual(0);
+    expect(high).toBeLessThan(10);
+  });
+});
+
+describe('the period under an instant', () => {
+  it('is found by its half-open span, and is none inside a hole', () => {
+    expect(periodIndexAt(data.startMs, data.endMs, 0)).toBe(0);
+    expect(periodIndexAt(data.startMs, data.endMs, half)).toBe(1);
+    expect(periodIndexAt(data.startMs, data.endMs, 2 * half)).toBe(-1);
+    expect(periodIndexAt(data.startMs, data.endMs, 5 * half)).toBe(-1);
+    expect(periodIndexAt([], [], 3)).toBe(-1);
+  });
+});
