@@ -8,7 +8,14 @@ export interface NameReading {
   /** `weak`: the word alone could mean something else ("t", "p", "x"). */
   strength: 'strong' | 'weak';
   /** What the name says about how a gas was measured, or that a temperature is a speed of sound. */
-  measure: 'mass-density' | 'molar-density' | 'density' | 'mole-fraction' | 'dry-mole-fraction' | 'speed-of-sound' | null;
+  measure:
+    | 'mass-density'
+    | 'molar-density'
+    | 'density'
+    | 'mole-fraction'
+    | 'dry-mole-fraction'
+    | 'speed-of-sound'
+    | null;
   /** Unit written in brackets or as a suffix. */
   unitText: string | null;
   /** Status columns: which instrument; null when the name does not say. */
@@ -18,7 +25,22 @@ export interface NameReading {
 }
 
 export interface TimeNameReading {
-  role: 'stamp' | 'date' | 'clock' | 'year' | 'month' | 'day-of-month' | 'day-of-year' | 'hhmm' | 'hour' | 'minute' | 'second' | 'seconds-of-day' | 'epoch' | 'elapsed' | 'counter';
+  role:
+    | 'stamp'
+    | 'date'
+    | 'clock'
+    | 'year'
+    | 'month'
+    | 'day-of-month'
+    | 'day-of-year'
+    | 'hhmm'
+    | 'hour'
+    | 'minute'
+    | 'second'
+    | 'seconds-of-day'
+    | 'epoch'
+    | 'elapsed'
+    | 'counter';
 }
 
 /** Unit suffixes as they occur in names, longest first; the value is the unit text they stand for. */
@@ -61,21 +83,80 @@ const unitSuffixes: readonly (readonly [readonly string[], string])[] = [
   [['pa'], 'Pa'],
 ];
 
-const noiseWords = new Set(['raw', 'inst', 'instant', 'hf', 'fast', 'ec', 'eddy', 'val', 'value', 'meas', 'measured', '5hz', '10hz', '20hz', '25hz', '50hz']);
+const noiseWords = new Set([
+  'raw',
+  'inst',
+  'instant',
+  'hf',
+  'fast',
+  'ec',
+  'eddy',
+  'val',
+  'value',
+  'meas',
+  'measured',
+  '5hz',
+  '10hz',
+  '20hz',
+  '25hz',
+  '50hz',
+]);
 /** Words that say the column is a statistic or another thing than the air. */
-const foreignWords = new Set(['std', 'stdev', 'sd', 'var', 'variance', 'cov', 'min', 'max', 'sigma', 'cell', 'ref', 'reference', 'cooler', 'motor', 'volt', 'volts', 'voltage', 'mv', 'battery', 'batt', 'panel', 'case', 'rh', 'absorptance', 'soil', 'dew', 'dewpoint']);
+const foreignWords = new Set([
+  'std',
+  'stdev',
+  'sd',
+  'var',
+  'variance',
+  'cov',
+  'min',
+  'max',
+  'sigma',
+  'cell',
+  'ref',
+  'reference',
+  'cooler',
+  'motor',
+  'volt',
+  'volts',
+  'voltage',
+  'mv',
+  'battery',
+  'batt',
+  'panel',
+  'case',
+  'rh',
+  'absorptance',
+  'soil',
+  'dew',
+  'dewpoint',
+]);
 
 const words = (text: string): ReadonlySet<string> => new Set(text.split(' '));
 
 const strongNames: Partial<Record<ChannelKey, ReadonlySet<string>>> = {
-  windU: words('u ux windu uwind windx xwind uvel velu velx usonic sonicu uson sonu sonicx ucomponent componentu windcompu windcomponentu windspeedu uwindspeed uspeed windux windspeedx'),
-  windV: words('v vy uy windv vwind windy ywind vvel velv vely vsonic sonicv vson sonv sonicy vcomponent componentv windcompv windcomponentv windspeedv vwindspeed vspeed winduy windspeedy'),
-  windW: words('w uz windw wwind windz zwind wvel velw velz wsonic sonicw wson sonw sonicz wcomponent componentw windcompw windcomponentw windspeedw wwindspeed wspeed winduz windspeedz verticalwind windvertical vertwind windvert verticalvelocity verticalwindspeed wvertical wvert'),
-  sonicTemperature: words('ts tsonic sonict sonictemp sonictemperature tson sont tempsonic temperaturesonic tempson acoustictemperature acoustictemp tacoustic tv tvirtual virtualtemperature virttemp sos speedofsound soundspeed csound'),
-  airTemperature: words('ta tair airt airtemp airtemperature temperatureair tempair tamb tambient ambienttemperature ambienttemp'),
+  windU: words(
+    'u ux windu uwind windx xwind uvel velu velx usonic sonicu uson sonu sonicx ucomponent componentu windcompu windcomponentu windspeedu uwindspeed uspeed windux windspeedx',
+  ),
+  windV: words(
+    'v vy uy windv vwind windy ywind vvel velv vely vsonic sonicv vson sonv sonicy vcomponent componentv windcompv windcomponentv windspeedv vwindspeed vspeed winduy windspeedy',
+  ),
+  windW: words(
+    'w uz windw wwind windz zwind wvel velw velz wsonic sonicw wson sonw sonicz wcomponent componentw windcompw windcomponentw windspeedw wwindspeed wspeed winduz windspeedz verticalwind windvertical vertwind windvert verticalvelocity verticalwindspeed wvertical wvert',
+  ),
+  sonicTemperature: words(
+    'ts tsonic sonict sonictemp sonictemperature tson sont tempsonic temperaturesonic tempson acoustictemperature acoustictemp tacoustic tv tvirtual virtualtemperature virttemp sos speedofsound soundspeed csound',
+  ),
+  airTemperature: words(
+    'ta tair airt airtemp airtemperature temperatureair tempair tamb tambient ambienttemperature ambienttemp',
+  ),
   co2: words('co2 rhoc rhoco2 co2rho cco2 carbondioxide xco2 chico2 co2x qco2'),
-  h2o: words('h2o rhov rhoh2o rhowv h2orho q wv watervapour watervapor vapour vapor ah absolutehumidity abshumidity humidityabs xh2o chih2o ch2o qv'),
-  airPressure: words('press pressure pair airpressure airpress pressureair pressair patm atmosphericpressure baro barometer barometric barometricpressure baropressure pamb ambientpressure ambientpress pbaro'),
+  h2o: words(
+    'h2o rhov rhoh2o rhowv h2orho q wv watervapour watervapor vapour vapor ah absolutehumidity abshumidity humidityabs xh2o chih2o ch2o qv',
+  ),
+  airPressure: words(
+    'press pressure pair airpressure airpress pressureair pressair patm atmosphericpressure baro barometer barometric barometricpressure baropressure pamb ambientpressure ambientpress pbaro',
+  ),
 };
 
 const weakNames: Partial<Record<ChannelKey, ReadonlySet<string>>> = {
@@ -109,10 +190,14 @@ const gasMeasureWords: Readonly<Record<string, NameReading['measure']>> = {
   mr: 'dry-mole-fraction',
 };
 
-const statusWords = words('status stat diag diagnostic diagnostics flag error err errorcode statuscode diagnosticcode');
+const statusWords = words(
+  'status stat diag diagnostic diagnostics flag error err errorcode statuscode diagnosticcode',
+);
 const sonicWords = words('sonic son anemometer anem wind sa');
 const analyserWords = words('gas irga analyser analyzer analysator co2 h2o ga');
-const signalWords = words('signal strength sig rssi signalstrength sigstrength sigstr window windowclean clean cleanliness');
+const signalWords = words(
+  'signal strength sig rssi signalstrength sigstrength sigstr window windowclean clean cleanliness',
+);
 const foulingWords = words('fouling dirt dirtiness dirty contamination');
 
 /** Text in brackets, or null. */
@@ -139,7 +224,8 @@ function splitSuffix(all: readonly string[]): { rest: string[]; unitText: string
   for (const [suffix, unit] of unitSuffixes) {
     const start = all.length - suffix.length;
     if (start < 1) continue;
-    if (suffix.every((word, index) => all[start + index] === word)) return { rest: all.slice(0, start), unitText: unit };
+    if (suffix.every((word, index) => all[start + index] === word))
+      return { rest: all.slice(0, start), unitText: unit };
   }
   return { rest: [...all], unitText: null };
 }
@@ -157,12 +243,19 @@ export function readName(name: string): NameReading | null {
     const isSonic = all.some((word) => sonicWords.has(word));
     const isAnalyser = all.some((word) => analyserWords.has(word));
     if (isSonic !== isAnalyser) {
-      return { ...none, channel: isSonic ? 'sonicStatus' : 'analyserStatus', strength: 'strong', instrument: isSonic ? 'sonic' : 'analyser' };
+      return {
+        ...none,
+        channel: isSonic ? 'sonicStatus' : 'analyserStatus',
+        strength: 'strong',
+        instrument: isSonic ? 'sonic' : 'analyser',
+      };
     }
     return { ...none, channel: 'analyserStatus', strength: 'weak' };
   }
-  if (all.some((word) => foulingWords.has(word))) return { ...none, channel: 'signalStrength', strength: 'strong', isFouling: true };
-  if (all.some((word) => signalWords.has(word))) return { ...none, channel: 'signalStrength', strength: 'strong' };
+  if (all.some((word) => foulingWords.has(word)))
+    return { ...none, channel: 'signalStrength', strength: 'strong', isFouling: true };
+  if (all.some((word) => signalWords.has(word)))
+    return { ...none, channel: 'signalStrength', strength: 'strong' };
 
   // "t_c" is a temperature in °C, while "rho_c" is a density of CO2: the whole name is tried before its suffix is taken off
   for (const candidate of [all, split.rest]) {
@@ -173,10 +266,15 @@ export function readName(name: string): NameReading | null {
       return says === undefined;
     });
     const joined = rest.join('');
-    const glued = Object.keys(gasMeasureWords).find((word) => word.length > 2 && joined.endsWith(word) && joined.length > word.length);
+    const glued = Object.keys(gasMeasureWords).find(
+      (word) => word.length > 2 && joined.endsWith(word) && joined.length > word.length,
+    );
     const keys = glued ? [joined, joined.slice(0, -glued.length)] : [joined];
     for (const key of keys) {
-      for (const [strength, names] of [['strong', strongNames], ['weak', weakNames]] as const) {
+      for (const [strength, names] of [
+        ['strong', strongNames],
+        ['weak', weakNames],
+      ] as const) {
         for (const [channel, set] of Object.entries(names) as [ChannelKey, ReadonlySet<string>][]) {
           if (!set.has(key)) continue;
           const isGas = channel === 'co2' || channel === 'h2o';
@@ -187,7 +285,11 @@ export function readName(name: string): NameReading | null {
             unitText: candidate === all ? inBrackets : unitText,
             channel,
             strength,
-            measure: isGas ? (measure ?? gluedMeasure ?? measureOfKey(key)) : /^(sos|speedofsound|soundspeed|csound)$/.test(key) ? 'speed-of-sound' : null,
+            measure: isGas
+              ? (measure ?? gluedMeasure ?? measureOfKey(key))
+              : /^(sos|speedofsound|soundspeed|csound)$/.test(key)
+                ? 'speed-of-sound'
+                : null,
           };
         }
       }
@@ -199,7 +301,13 @@ export function readName(name: string): NameReading | null {
 function strongestMeasure(now: NameReading['measure'], next: NameReading['measure']): NameReading['measure'] {
   // "dry mole fraction" is dry, "molar density" molar
   const rank = (measure: NameReading['measure']): number =>
-    measure === 'dry-mole-fraction' ? 3 : measure === 'mass-density' || measure === 'molar-density' ? 2 : measure === null ? 0 : 1;
+    measure === 'dry-mole-fraction'
+      ? 3
+      : measure === 'mass-density' || measure === 'molar-density'
+        ? 2
+        : measure === null
+          ? 0
+          : 1;
   return rank(next) >= rank(now) ? next : now;
 }
 
@@ -211,7 +319,12 @@ function measureOfKey(key: string): NameReading['measure'] {
 }
 
 const timeNames: readonly (readonly [ReadonlySet<string>, TimeNameReading['role']])[] = [
-  [words('timestamp datetime dateandtime datetimestamp stamp timestampstart timestampend timestamputc datetimeutc utcdatetime'), 'stamp'],
+  [
+    words(
+      'timestamp datetime dateandtime datetimestamp stamp timestampstart timestampend timestamputc datetimeutc utcdatetime',
+    ),
+    'stamp',
+  ],
   [words('date day_date yyyymmdd'), 'date'],
   [words('time clock timeofday tod hhmmss timeutc utctime utc'), 'clock'],
   [words('year yyyy yr'), 'year'],
@@ -225,7 +338,10 @@ const timeNames: readonly (readonly [ReadonlySet<string>, TimeNameReading['role'
   [words('secondsofday secofday sod secondofday daysecond'), 'seconds-of-day'],
   [words('epoch unixtime unix epochtime epochms posix posixtime unixms unixs epochs'), 'epoch'],
   [words('elapsed elapsedtime elapseds runtime'), 'elapsed'],
-  [words('record recno recordno rec recordnumber n counter count scan scanno row index no id seq sequence'), 'counter'],
+  [
+    words('record recno recordno rec recordnumber n counter count scan scanno row index no id seq sequence'),
+    'counter',
+  ],
 ];
 
 /** What the name of a column says about time; null when it says nothing. */
@@ -278,7 +394,10 @@ export function readUnit(text: string): { unit: string; isDry: boolean } | null 
 }
 
 /** The unit a channel would carry for a written one; null when that channel cannot have it. */
-export function unitForChannel(channel: ChannelKey, reading: { unit: string; isDry: boolean }): string | null {
+export function unitForChannel(
+  channel: ChannelKey,
+  reading: { unit: string; isDry: boolean },
+): string | null {
   const allowed = channelUnits[channel] as readonly string[];
   const dry = `${reading.unit} dry`;
   if (reading.isDry && allowed.includes(dry)) return dry;

@@ -2,7 +2,17 @@ import { channelUnits, requiredChannels } from '../schemas/layout';
 import type { ChannelKey, Layout, LayoutColumn, TimeSource } from '../schemas/layout';
 import { readName, readTimeName, readUnit, unitForChannel } from './column-names';
 import type { NameReading, TimeNameReading } from './column-names';
-import { fieldsOf, holdsPatternTokens, linesOf, numberOf, previewLayout, readClockS, readIso, readPattern, uncomment } from './preview';
+import {
+  fieldsOf,
+  holdsPatternTokens,
+  linesOf,
+  numberOf,
+  previewLayout,
+  readClockS,
+  readIso,
+  readPattern,
+  uncomment,
+} from './preview';
 import type { Preview } from './preview';
 
 /**
@@ -23,7 +33,17 @@ export interface GuessInput {
 }
 
 export type Confidence = 'sure' | 'likely' | 'doubtful';
-export type Source = 'name' | 'unit-row' | 'range' | 'position' | 'header' | 'file-name' | 'values' | 'spacing' | 'set-up' | 'usual';
+export type Source =
+  | 'name'
+  | 'unit-row'
+  | 'range'
+  | 'position'
+  | 'header'
+  | 'file-name'
+  | 'values'
+  | 'spacing'
+  | 'set-up'
+  | 'usual';
 
 export const guessedFields = [
   'delimiter',
@@ -143,7 +163,8 @@ function mode(values: readonly number[]): { value: number; share: number } {
   const counts = new Map<number, number>();
   for (const value of values) counts.set(value, (counts.get(value) ?? 0) + 1);
   let best = { value: 0, share: 0 };
-  for (const [value, count] of counts) if (count / values.length > best.share) best = { value, share: count / values.length };
+  for (const [value, count] of counts)
+    if (count / values.length > best.share) best = { value, share: count / values.length };
   return best;
 }
 
@@ -190,7 +211,10 @@ function findDialect(lines: readonly string[]): Dialect {
   for (let row = 0; row < Math.min(lines.length, 200); row += 1) {
     const next = lines.slice(row, row + 3).map((line) => fieldsOf(line, delimiter));
     const first = next[0] ?? [];
-    if (isDataRow(first, width) && next.slice(1).filter((fields) => isDataRow(fields, width)).length >= Math.min(1, next.length - 1)) {
+    if (
+      isDataRow(first, width) &&
+      next.slice(1).filter((fields) => isDataRow(fields, width)).length >= Math.min(1, next.length - 1)
+    ) {
       headerRows = row;
       break;
     }
@@ -299,10 +323,16 @@ interface DateFound {
   isAmbiguous: boolean;
 }
 
-const dateShapes: readonly { expression: RegExp; format: (match: RegExpExecArray) => string; swaps?: true }[] = [
+const dateShapes: readonly {
+  expression: RegExp;
+  format: (match: RegExpExecArray) => string;
+  swaps?: true;
+}[] = [
   {
-    expression: /(?<!\d)(\d{4})([-_./]?)(\d{2})\2(\d{2})(?:([T _-]{1,2})(\d{2})([-_:.]?)(\d{2})(?:\7(\d{2}))?(?!\d))?(Z?)/,
-    format: (m) => `YYYY${m[2]}MM${m[2]}DD${m[5] === undefined ? '' : `${m[5]}hh${m[7]}mm${m[9] === undefined ? '' : `${m[7]}ss`}`}`,
+    expression:
+      /(?<!\d)(\d{4})([-_./]?)(\d{2})\2(\d{2})(?:([T _-]{1,2})(\d{2})([-_:.]?)(\d{2})(?:\7(\d{2}))?(?!\d))?(Z?)/,
+    format: (m) =>
+      `YYYY${m[2]}MM${m[2]}DD${m[5] === undefined ? '' : `${m[5]}hh${m[7]}mm${m[9] === undefined ? '' : `${m[7]}ss`}`}`,
   },
   {
     expression: /(?<!\d)(\d{4})(\d{2})(\d{2})(\d{2})(\d{2})(\d{2})?(?!\d)/,
@@ -310,11 +340,14 @@ const dateShapes: readonly { expression: RegExp; format: (match: RegExpExecArray
   },
   {
     expression: /(?<!\d)(\d{4})([-_./]?)(\d{3})(?:([T _-])(\d{2})([-_:.]?)(\d{2})(?:\6(\d{2}))?)?(?!\d)/,
-    format: (m) => `YYYY${m[2]}DDD${m[4] === undefined ? '' : `${m[4]}hh${m[6]}mm${m[8] === undefined ? '' : `${m[6]}ss`}`}`,
+    format: (m) =>
+      `YYYY${m[2]}DDD${m[4] === undefined ? '' : `${m[4]}hh${m[6]}mm${m[8] === undefined ? '' : `${m[6]}ss`}`}`,
   },
   {
-    expression: /(?<!\d)(\d{2})([-_./])(\d{2})\2(\d{4})(?:([T _-]{1,2})(\d{2})([-_:.]?)(\d{2})(?:\7(\d{2}))?)?(?!\d)/,
-    format: (m) => `DD${m[2]}MM${m[2]}YYYY${m[5] === undefined ? '' : `${m[5]}hh${m[7]}mm${m[9] === undefined ? '' : `${m[7]}ss`}`}`,
+    expression:
+      /(?<!\d)(\d{2})([-_./])(\d{2})\2(\d{4})(?:([T _-]{1,2})(\d{2})([-_:.]?)(\d{2})(?:\7(\d{2}))?)?(?!\d)/,
+    format: (m) =>
+      `DD${m[2]}MM${m[2]}YYYY${m[5] === undefined ? '' : `${m[5]}hh${m[7]}mm${m[9] === undefined ? '' : `${m[7]}ss`}`}`,
     swaps: true,
   },
   {
@@ -345,7 +378,11 @@ function datesIn(text: string, label: 'file-name' | 'header'): DateFound[] {
     const before = text.slice(0, match.index);
     const mark = /[^A-Za-z0-9*]+$/.exec(before)?.[0] ?? '';
     const lead =
-      label === 'header' && before !== '' && !holdsPatternTokens(before) ? before : before === '' ? '' : `*${holdsPatternTokens(mark) ? '' : mark}`;
+      label === 'header' && before !== '' && !holdsPatternTokens(before)
+        ? before
+        : before === ''
+          ? ''
+          : `*${holdsPatternTokens(mark) ? '' : mark}`;
     const after = text.slice(match.index + match[0].length);
     const pattern = `${lead}${core}${after === '' && !match[0].endsWith('Z') ? '' : '*'}`;
     if (pattern.length > 120 || !readPattern(text, pattern)) continue;
@@ -392,7 +429,10 @@ const problem = (
 ): LayoutProblem => ({ code, severity, field, channel, message });
 
 /** Which of day and month comes first in tokens like 22/06/2027. */
-function dayMonthOrder(tokens: readonly string[], context: TimeContext): { first: 'DD' | 'MM'; isAmbiguous: boolean } {
+function dayMonthOrder(
+  tokens: readonly string[],
+  context: TimeContext,
+): { first: 'DD' | 'MM'; isAmbiguous: boolean } {
   const pairs = tokens.flatMap((token) => {
     const match = /^(\d{1,2})([-/.])(\d{1,2})\2/.exec(token);
     return match ? [{ a: Number(match[1]), b: Number(match[3]), mark: match[2] }] : [];
@@ -420,22 +460,48 @@ function datePattern(token: string, order: 'DD' | 'MM'): string | null {
 }
 
 const orderProblem = (example: string): LayoutProblem =>
-  problem('day-month-order', 'time', `“${example}” can be day then month or month then day; no row and no name settles it. Taken as day first: please look.`);
+  problem(
+    'day-month-order',
+    'time',
+    `“${example}” can be day then month or month then day; no row and no name settles it. Taken as day first: please look.`,
+  );
 
-const dateSourceOf = (context: TimeContext): { source: { from: 'file-name' | 'header'; pattern: string } | null; date: DateFound | null; candidates: DateFound[] } => {
+const dateSourceOf = (
+  context: TimeContext,
+): {
+  source: { from: 'file-name' | 'header'; pattern: string } | null;
+  date: DateFound | null;
+  candidates: DateFound[];
+} => {
   const distinct = context.headerDates.filter(
     (date, index) => context.headerDates.findIndex((other) => other.text === date.text) === index,
   );
   const fromName = context.nameDates[0];
-  if (fromName) return { source: { from: 'file-name', pattern: fromName.pattern }, date: fromName, candidates: [fromName] };
+  if (fromName)
+    return {
+      source: { from: 'file-name', pattern: fromName.pattern },
+      date: fromName,
+      candidates: [fromName],
+    };
   const fromHeader = distinct.find((date) => date.hasTime) ?? distinct[0];
-  if (fromHeader) return { source: { from: 'header', pattern: fromHeader.pattern }, date: fromHeader, candidates: distinct };
+  if (fromHeader)
+    return {
+      source: { from: 'header', pattern: fromHeader.pattern },
+      date: fromHeader,
+      candidates: distinct,
+    };
   return { source: null, date: null, candidates: [] };
 };
 
 function guessTime(context: TimeContext): TimeGuess {
   const { profiles } = context;
-  const done = (time: TimeSource, columns: number[], how: string, confidence: Confidence, source: Source = 'values'): TimeGuess => ({
+  const done = (
+    time: TimeSource,
+    columns: number[],
+    how: string,
+    confidence: Confidence,
+    source: Source = 'values',
+  ): TimeGuess => ({
     time,
     columns,
     knowledge: { confidence, source, how },
@@ -448,7 +514,12 @@ function guessTime(context: TimeContext): TimeGuess {
     const example = profile.tokens.find((token) => token !== '') ?? '';
     if (share(profile.tokens, (token) => readIso(token) !== null && token.length > 10) > 0.9) {
       const offset = readIso(example)?.offsetMinutes ?? null;
-      const guess = done({ kind: 'stamp', column: profile.index, format: 'iso' }, [profile.index], 'ISO 8601 stamps', 'sure');
+      const guess = done(
+        { kind: 'stamp', column: profile.index, format: 'iso' },
+        [profile.index],
+        'ISO 8601 stamps',
+        'sure',
+      );
       return { ...guess, zone: offset === null ? null : { offsetMinutes: offset } };
     }
     if (share(profile.tokens, (token) => stampToken.test(token)) > 0.9) {
@@ -469,11 +540,26 @@ function guessTime(context: TimeContext): TimeGuess {
     if (share(profile.tokens, (token) => packedStampToken.test(token)) > 0.9) {
       const mark = /[T _-]/.exec(example)?.[0] ?? 'T';
       const isUtc = example.endsWith('Z');
-      const guess = done({ kind: 'stamp', column: profile.index, format: `YYYYMMDD${mark}hhmmss${isUtc ? '*' : ''}` }, [profile.index], 'one column with date and time', 'sure');
+      const guess = done(
+        { kind: 'stamp', column: profile.index, format: `YYYYMMDD${mark}hhmmss${isUtc ? '*' : ''}` },
+        [profile.index],
+        'one column with date and time',
+        'sure',
+      );
       return { ...guess, zone: isUtc ? { offsetMinutes: 0 } : null };
     }
-    if (share(profile.tokens, (token) => /^\d{14}([.,]\d+)?$/.test(token) && readPattern(token, 'YYYYMMDDhhmmss') !== null) > 0.9) {
-      return done({ kind: 'stamp', column: profile.index, format: 'YYYYMMDDhhmmss' }, [profile.index], 'one column of fourteen digits', 'sure');
+    if (
+      share(
+        profile.tokens,
+        (token) => /^\d{14}([.,]\d+)?$/.test(token) && readPattern(token, 'YYYYMMDDhhmmss') !== null,
+      ) > 0.9
+    ) {
+      return done(
+        { kind: 'stamp', column: profile.index, format: 'YYYYMMDDhhmmss' },
+        [profile.index],
+        'one column of fourteen digits',
+        'sure',
+      );
     }
   }
 
@@ -482,21 +568,34 @@ function guessTime(context: TimeContext): TimeGuess {
   const packedClock = profiles.find(
     (profile) =>
       (profile.timeRole === 'clock' || profile.name === null) &&
-      share(profile.tokens, (token) => /^\d{6}([.,]\d+)?$/.test(token) && !Number.isNaN(readClockS(token))) > 0.9 &&
+      share(profile.tokens, (token) => /^\d{6}([.,]\d+)?$/.test(token) && !Number.isNaN(readClockS(token))) >
+        0.9 &&
       profile.rising > 0,
   );
   const clockColumn = clock ?? packedClock;
   const date = profiles.find((profile) => share(profile.tokens, (token) => dateToken.test(token)) > 0.9);
-  const packedDate = profiles.find((profile) => share(profile.tokens, (token) => /^(19|20)\d{6}$/.test(token) && readPattern(token, 'YYYYMMDD') !== null) > 0.9);
+  const packedDate = profiles.find(
+    (profile) =>
+      share(
+        profile.tokens,
+        (token) => /^(19|20)\d{6}$/.test(token) && readPattern(token, 'YYYYMMDD') !== null,
+      ) > 0.9,
+  );
   if (clockColumn && (date || packedDate)) {
     const dateProfile = (date ?? packedDate)!;
     const example = dateProfile.tokens.find((token) => token !== '') ?? '';
     const isIso = readIso(example) !== null;
     const order = dayMonthOrder(dateProfile.tokens, context);
-    const format = packedDate && !date ? 'YYYYMMDD' : isIso ? 'iso' : (datePattern(example, order.first) ?? 'iso');
+    const format =
+      packedDate && !date ? 'YYYYMMDD' : isIso ? 'iso' : (datePattern(example, order.first) ?? 'iso');
     const isAmbiguous = !isIso && format !== 'YYYYMMDD' && !format.startsWith('YYYY') && order.isAmbiguous;
     const guess = done(
-      { kind: 'date-and-time', dateColumn: dateProfile.index, dateFormat: format, timeColumn: clockColumn.index },
+      {
+        kind: 'date-and-time',
+        dateColumn: dateProfile.index,
+        dateFormat: format,
+        timeColumn: clockColumn.index,
+      },
       [dateProfile.index, clockColumn.index],
       'a date column and a time column',
       isAmbiguous ? 'doubtful' : 'sure',
@@ -515,15 +614,25 @@ function guessTime(context: TimeContext): TimeGuess {
     ];
     const fit = span.find(([low, high]) => profile.min >= low && profile.max <= high);
     if (fit) {
-      const guess = done({ kind: 'epoch', column: profile.index, unit: fit[2] }, [profile.index], `${fit[2]} since 1970, UTC`, 'sure');
+      const guess = done(
+        { kind: 'epoch', column: profile.index, unit: fit[2] },
+        [profile.index],
+        `${fit[2]} since 1970, UTC`,
+        'sure',
+      );
       return { ...guess, zone: { offsetMinutes: 0 } };
     }
   }
 
-  const byRole = (role: TimeNameReading['role']): Profile | undefined => profiles.find((profile) => profile.timeRole === role);
+  const byRole = (role: TimeNameReading['role']): Profile | undefined =>
+    profiles.find((profile) => profile.timeRole === role);
   const named = profiles.some((profile) => profile.name !== null);
   const isYear = (profile: Profile | undefined): profile is Profile =>
-    profile !== undefined && profile.isWhole && profile.min >= 1990 && profile.max <= 2100 && profile.max - profile.min <= 1;
+    profile !== undefined &&
+    profile.isWhole &&
+    profile.min >= 1990 &&
+    profile.max <= 2100 &&
+    profile.max - profile.min <= 1;
 
   // year, month, day, hour, minute, second each in its own column: the layout has no word for that
   const monthColumn = byRole('month');
@@ -532,7 +641,9 @@ function guessTime(context: TimeContext): TimeGuess {
     const { source } = dateSourceOf(context);
     const guess = done(
       { kind: 'start-and-rate', start: source ?? { from: 'file-name', pattern: '*YYYYMMDD_hhmm*' } },
-      profiles.filter((profile) => profile.timeRole !== null && profile.timeRole !== 'counter').map((profile) => profile.index),
+      profiles
+        .filter((profile) => profile.timeRole !== null && profile.timeRole !== 'counter')
+        .map((profile) => profile.index),
       'date and time are spread over columns of their own',
       'doubtful',
       source?.from ?? 'usual',
@@ -554,14 +665,23 @@ function guessTime(context: TimeContext): TimeGuess {
   const yearColumn = byRole('year') ?? (named ? undefined : profiles.find((profile) => isYear(profile)));
   const dayColumn =
     byRole('day-of-year') ??
-    (yearColumn ? profiles.find((profile) => profile.index === yearColumn.index + 1 && profile.min >= 1 && profile.max < 367) : undefined);
+    (yearColumn
+      ? profiles.find(
+          (profile) => profile.index === yearColumn.index + 1 && profile.min >= 1 && profile.max < 367,
+        )
+      : undefined);
   if (dayColumn && dayColumn.min >= 1 && dayColumn.max < 367 && dayColumn.numbers.length > 0) {
     const yearFrom = dateSourceOf(context);
     const year: Extract<TimeSource, { kind: 'day-of-year' }>['year'] | null = isYear(yearColumn)
       ? { column: yearColumn.index }
       : yearFrom.source;
     const used = [dayColumn.index, ...(isYear(yearColumn) ? [yearColumn.index] : [])];
-    const yearProblem = problem('date-unsaid', 'time', 'The day of the year is there, but no year: put it into the file’s name, or write where it stands.', 'blocks');
+    const yearProblem = problem(
+      'date-unsaid',
+      'time',
+      'The day of the year is there, but no year: put it into the file’s name, or write where it stands.',
+      'blocks',
+    );
     const withYear = (guess: TimeGuess): TimeGuess => {
       if (year === null) {
         guess.problems.push(yearProblem);
@@ -573,7 +693,14 @@ function guessTime(context: TimeContext): TimeGuess {
     if (!dayColumn.isWhole) {
       return withYear(
         done(
-          { kind: 'day-of-year', year: yearOrPlaceholder, dayColumn: dayColumn.index, timeColumn: null, timeFormat: 'fraction-of-day', secondsColumn: null },
+          {
+            kind: 'day-of-year',
+            year: yearOrPlaceholder,
+            dayColumn: dayColumn.index,
+            timeColumn: null,
+            timeFormat: 'fraction-of-day',
+            secondsColumn: null,
+          },
           used,
           'day of the year with its fraction',
           'likely',
@@ -594,11 +721,25 @@ function guessTime(context: TimeContext): TimeGuess {
       );
     const seconds =
       byRole('second') ??
-      profiles.find((profile) => hhmm !== undefined && profile.index === hhmm.index + 1 && profile.name === null && profile.min >= 0 && profile.max < 60.999);
+      profiles.find(
+        (profile) =>
+          hhmm !== undefined &&
+          profile.index === hhmm.index + 1 &&
+          profile.name === null &&
+          profile.min >= 0 &&
+          profile.max < 60.999,
+      );
     if (clockColumn) {
       return withYear(
         done(
-          { kind: 'day-of-year', year: yearOrPlaceholder, dayColumn: dayColumn.index, timeColumn: clockColumn.index, timeFormat: 'clock', secondsColumn: null },
+          {
+            kind: 'day-of-year',
+            year: yearOrPlaceholder,
+            dayColumn: dayColumn.index,
+            timeColumn: clockColumn.index,
+            timeFormat: 'clock',
+            secondsColumn: null,
+          },
           [...used, clockColumn.index],
           'day of the year and time of day',
           'sure',
@@ -608,7 +749,14 @@ function guessTime(context: TimeContext): TimeGuess {
     if (secondOfDay) {
       return withYear(
         done(
-          { kind: 'day-of-year', year: yearOrPlaceholder, dayColumn: dayColumn.index, timeColumn: secondOfDay.index, timeFormat: 'seconds-of-day', secondsColumn: null },
+          {
+            kind: 'day-of-year',
+            year: yearOrPlaceholder,
+            dayColumn: dayColumn.index,
+            timeColumn: secondOfDay.index,
+            timeFormat: 'seconds-of-day',
+            secondsColumn: null,
+          },
           [...used, secondOfDay.index],
           'day of the year and seconds of the day',
           'sure',
@@ -618,7 +766,14 @@ function guessTime(context: TimeContext): TimeGuess {
     if (hhmm) {
       return withYear(
         done(
-          { kind: 'day-of-year', year: yearOrPlaceholder, dayColumn: dayColumn.index, timeColumn: hhmm.index, timeFormat: 'hhmm', secondsColumn: seconds?.index ?? null },
+          {
+            kind: 'day-of-year',
+            year: yearOrPlaceholder,
+            dayColumn: dayColumn.index,
+            timeColumn: hhmm.index,
+            timeFormat: 'hhmm',
+            secondsColumn: seconds?.index ?? null,
+          },
           [...used, hhmm.index, ...(seconds ? [seconds.index] : [])],
           'year, day of the year, hhmm and seconds',
           seconds ? 'sure' : 'doubtful',
@@ -630,7 +785,13 @@ function guessTime(context: TimeContext): TimeGuess {
   const place = dateSourceOf(context);
   const candidatesProblem =
     place.candidates.length > 1
-      ? [problem('date-candidates', 'time', `The header holds ${place.candidates.length} dates (${place.candidates.map((date) => date.text).join(', ')}). The start is taken from “${place.date?.text ?? ''}”: please look.`)]
+      ? [
+          problem(
+            'date-candidates',
+            'time',
+            `The header holds ${place.candidates.length} dates (${place.candidates.map((date) => date.text).join(', ')}). The start is taken from “${place.date?.text ?? ''}”: please look.`,
+          ),
+        ]
       : [];
   const swapProblem = place.date?.isAmbiguous ? [orderProblem(place.date.text)] : [];
 
@@ -640,34 +801,60 @@ function guessTime(context: TimeContext): TimeGuess {
     const guess = done(
       { kind: 'time-of-day', column: clockColumn.index, date: source },
       [clockColumn.index],
-      place.source ? `time of day in a column, date from the ${source.from === 'header' ? 'header' : 'file’s name'}` : 'time of day in a column',
+      place.source
+        ? `time of day in a column, date from the ${source.from === 'header' ? 'header' : 'file’s name'}`
+        : 'time of day in a column',
       place.source && candidatesProblem.length === 0 ? 'sure' : 'doubtful',
       place.source?.from ?? 'values',
     );
     guess.problems.push(...candidatesProblem, ...swapProblem);
     if (!place.source) {
-      guess.problems.push(problem('date-unsaid', 'time', 'Rows carry the time of day, but no date stands in the rows, the header or the file’s name. Say where the date comes from.', 'blocks'));
+      guess.problems.push(
+        problem(
+          'date-unsaid',
+          'time',
+          'Rows carry the time of day, but no date stands in the rows, the header or the file’s name. Say where the date comes from.',
+          'blocks',
+        ),
+      );
     }
     return guess;
   }
 
   // no stamps
-  const counters = profiles.filter((profile) => profile.timeRole === 'elapsed' || profile.timeRole === 'seconds-of-day');
+  const counters = profiles.filter(
+    (profile) => profile.timeRole === 'elapsed' || profile.timeRole === 'seconds-of-day',
+  );
   const withTime = [place.date, ...context.headerDates].find((found) => found?.hasTime) ?? null;
   const start: { from: 'file-name' | 'header'; pattern: string } | null =
     place.date?.hasTime || !withTime ? place.source : { from: 'header', pattern: withTime.pattern };
   const guess = done(
     { kind: 'start-and-rate', start: start ?? { from: 'file-name', pattern: '*YYYYMMDD_hhmm*' } },
     counters.map((profile) => profile.index),
-    start ? `rows carry no stamps; start from the ${start.from === 'header' ? 'header' : 'file’s name'}, then the sampling rate` : 'rows carry no stamps',
+    start
+      ? `rows carry no stamps; start from the ${start.from === 'header' ? 'header' : 'file’s name'}, then the sampling rate`
+      : 'rows carry no stamps',
     start && candidatesProblem.length === 0 ? 'likely' : 'doubtful',
     start?.from ?? 'usual',
   );
   guess.problems.push(...candidatesProblem, ...swapProblem);
   if (!start) {
-    guess.problems.push(problem('date-unsaid', 'time', 'No stamp in the rows, no date in the header or in the file’s name: a start time is needed. Put it into the name, for example 20270622_1130.', 'blocks'));
+    guess.problems.push(
+      problem(
+        'date-unsaid',
+        'time',
+        'No stamp in the rows, no date in the header or in the file’s name: a start time is needed. Put it into the name, for example 20270622_1130.',
+        'blocks',
+      ),
+    );
   } else if (!withTime && !place.date?.hasTime) {
-    guess.problems.push(problem('date-unsaid', 'time', 'A date was found but no time of day, so the file is taken to start at midnight: please look.'));
+    guess.problems.push(
+      problem(
+        'date-unsaid',
+        'time',
+        'A date was found but no time of day, so the file is taken to start at midnight: please look.',
+      ),
+    );
   }
   return guess;
 }
@@ -746,10 +933,14 @@ const unitFits: Partial<Record<ChannelKey, readonly UnitFit[]>> = {
 
 const short = (value: number): string => {
   const size = Math.abs(value);
-  return Number(value.toFixed(size >= 100 ? 0 : size >= 10 ? 1 : 2)).toString().replace('-', '−');
+  return Number(value.toFixed(size >= 100 ? 0 : size >= 10 ? 1 : 2))
+    .toString()
+    .replace('-', '−');
 };
 const rangeWords = (profile: Profile): string =>
-  profile.isConstant ? `constant ${short(profile.min)}` : `range ${short(profile.min)} to ${short(profile.max)}`;
+  profile.isConstant
+    ? `constant ${short(profile.min)}`
+    : `range ${short(profile.min)} to ${short(profile.max)}`;
 
 function pickUnit(pick: Pick, isGasDensity: boolean | null): UnitPick {
   const { profile, channel } = pick;
@@ -771,17 +962,36 @@ function pickUnit(pick: Pick, isGasDensity: boolean | null): UnitPick {
     const known = readUnit(text);
     if (!known) {
       if (channel !== 'sonicStatus' && channel !== 'analyserStatus') {
-        problems.push(problem('unit-unknown', 'columns', `“${text}” beside ${words} is no unit that a layout knows. Choose the unit.`, 'confirm', channel));
+        problems.push(
+          problem(
+            'unit-unknown',
+            'columns',
+            `“${text}” beside ${words} is no unit that a layout knows. Choose the unit.`,
+            'confirm',
+            channel,
+          ),
+        );
       }
       continue;
     }
     const isDry = known.isDry || measure === 'dry-mole-fraction';
     const unit = unitForChannel(channel, { unit: known.unit, isDry });
     if (!unit) {
-      problems.push(problem('unit-unknown', 'columns', `${words} cannot be in “${text}”. Choose the unit.`, 'confirm', channel));
+      problems.push(
+        problem(
+          'unit-unknown',
+          'columns',
+          `${words} cannot be in “${text}”. Choose the unit.`,
+          'confirm',
+          channel,
+        ),
+      );
       continue;
     }
-    const fit = fits.find((candidate) => unit.startsWith(candidate.unit) && (unit === candidate.unit || unit === `${candidate.unit} dry`));
+    const fit = fits.find(
+      (candidate) =>
+        unit.startsWith(candidate.unit) && (unit === candidate.unit || unit === `${candidate.unit} dry`),
+    );
     if (fit && !Number.isNaN(profile.median) && (profile.median < fit.low || profile.median > fit.high)) {
       const better = fitting.map((candidate) => candidate.unit).join(' or ');
       return {
@@ -808,12 +1018,33 @@ function pickUnit(pick: Pick, isGasDensity: boolean | null): UnitPick {
   }
 
   if (channel === 'windU' || channel === 'windV' || channel === 'windW') {
-    const isLarge = Math.abs(profile.median) > 60 || profile.spread > 40 || (channel === 'windW' && profile.spread > 12);
+    const isLarge =
+      Math.abs(profile.median) > 60 || profile.spread > 40 || (channel === 'windW' && profile.spread > 12);
     if (isLarge) {
-      problems.push(problem('unit-doubtful', 'columns', `${words}: ${rangeWords(profile)} is much for m s-1; taken as cm s-1.`, 'confirm', channel));
-      return { unit: 'cm s-1', by: 'range', confidence: 'doubtful', how: `${rangeWords(profile)} fits cm s-1`, problems };
+      problems.push(
+        problem(
+          'unit-doubtful',
+          'columns',
+          `${words}: ${rangeWords(profile)} is much for m s-1; taken as cm s-1.`,
+          'confirm',
+          channel,
+        ),
+      );
+      return {
+        unit: 'cm s-1',
+        by: 'range',
+        confidence: 'doubtful',
+        how: `${rangeWords(profile)} fits cm s-1`,
+        problems,
+      };
     }
-    return { unit: 'm s-1', by: 'range', confidence: 'likely', how: `${rangeWords(profile)} is ordinary for m s-1`, problems };
+    return {
+      unit: 'm s-1',
+      by: 'range',
+      confidence: 'likely',
+      how: `${rangeWords(profile)} is ordinary for m s-1`,
+      problems,
+    };
   }
 
   let candidates = fitting.map((fit) => fit.unit);
@@ -841,24 +1072,62 @@ function pickUnit(pick: Pick, isGasDensity: boolean | null): UnitPick {
   }
   const first = candidates[0];
   if (first === undefined) {
-    problems.push(problem('unit-doubtful', 'columns', `${words}: ${rangeWords(profile)} fits no unit that a layout knows. Choose the unit.`, 'confirm', channel));
-    return { unit: allowed[0] ?? '1', by: 'usual', confidence: 'doubtful', how: `${rangeWords(profile)} fits no unit`, problems };
+    problems.push(
+      problem(
+        'unit-doubtful',
+        'columns',
+        `${words}: ${rangeWords(profile)} fits no unit that a layout knows. Choose the unit.`,
+        'confirm',
+        channel,
+      ),
+    );
+    return {
+      unit: allowed[0] ?? '1',
+      by: 'usual',
+      confidence: 'doubtful',
+      how: `${rangeWords(profile)} fits no unit`,
+      problems,
+    };
   }
   const unit = measure === 'dry-mole-fraction' && allowed.includes(`${first} dry`) ? `${first} dry` : first;
   const others = fits.map((fit) => fit.unit).filter((other) => !candidates.includes(other));
   if (candidates.length > 1) {
     problems.push(
-      problem('unit-doubtful', 'columns', `${words}: ${rangeWords(profile)} fits ${candidates.join(' and ')}. Taken as ${unit}${hint}: please look.`, 'confirm', channel),
+      problem(
+        'unit-doubtful',
+        'columns',
+        `${words}: ${rangeWords(profile)} fits ${candidates.join(' and ')}. Taken as ${unit}${hint}: please look.`,
+        'confirm',
+        channel,
+      ),
     );
-    return { unit, by: 'range', confidence: 'doubtful', how: `${rangeWords(profile)} fits ${candidates.join(' and ')}`, problems };
+    return {
+      unit,
+      by: 'range',
+      confidence: 'doubtful',
+      how: `${rangeWords(profile)} fits ${candidates.join(' and ')}`,
+      problems,
+    };
   }
   if (channel === 'signalStrength') {
     return { unit, by: 'range', confidence: 'likely', how: `${rangeWords(profile)} fits ${unit}`, problems };
   }
   problems.push(
-    problem('unit-from-range', 'columns', `${words}: no unit is written; ${rangeWords(profile)} fits ${unit}${others[0] ? `, not ${others[0]}` : ''}. Please confirm.`, 'confirm', channel),
+    problem(
+      'unit-from-range',
+      'columns',
+      `${words}: no unit is written; ${rangeWords(profile)} fits ${unit}${others[0] ? `, not ${others[0]}` : ''}. Please confirm.`,
+      'confirm',
+      channel,
+    ),
   );
-  return { unit, by: 'range', confidence: 'likely', how: `${rangeWords(profile)} fits ${unit}${others[0] ? `, not ${others[0]}` : ''}`, problems };
+  return {
+    unit,
+    by: 'range',
+    confidence: 'likely',
+    how: `${rangeWords(profile)} fits ${unit}${others[0] ? `, not ${others[0]}` : ''}`,
+    problems,
+  };
 }
 
 function pickByName(profiles: readonly Profile[], problems: LayoutProblem[]): Pick[] {
@@ -873,7 +1142,9 @@ function pickByName(profiles: readonly Profile[], problems: LayoutProblem[]): Pi
 
   for (const channel of Object.keys(channelUnits) as ChannelKey[]) {
     if (channel === 'sonicStatus' || channel === 'analyserStatus') continue;
-    const strong = candidates.filter((profile) => profile.reading?.channel === channel && profile.reading.strength === 'strong');
+    const strong = candidates.filter(
+      (profile) => profile.reading?.channel === channel && profile.reading.strength === 'strong',
+    );
     const chosen = strong.length > 1 ? preferred(channel, strong) : strong[0];
     if (!chosen) continue;
     add(chosen, channel, strong.length > 1 ? 'doubtful' : 'sure');
@@ -891,8 +1162,12 @@ function pickByName(profiles: readonly Profile[], problems: LayoutProblem[]): Pi
   }
 
   // words that alone say little: x y z only as a set of three, t as sonic temperature only if there is no other
-  const weak = candidates.filter((profile) => profile.reading?.strength === 'weak' && !picks.some((pick) => pick.profile === profile));
-  const winds = (['windU', 'windV', 'windW'] as const).map((channel) => weak.find((profile) => profile.reading?.channel === channel));
+  const weak = candidates.filter(
+    (profile) => profile.reading?.strength === 'weak' && !picks.some((pick) => pick.profile === profile),
+  );
+  const winds = (['windU', 'windV', 'windW'] as const).map((channel) =>
+    weak.find((profile) => profile.reading?.channel === channel),
+  );
   if (!taken.has('windU') && winds.every((profile) => profile !== undefined)) {
     (['windU', 'windV', 'windW'] as const).forEach((channel, index) => add(winds[index]!, channel, 'likely'));
   }
@@ -906,33 +1181,54 @@ function pickByName(profiles: readonly Profile[], problems: LayoutProblem[]): Pi
     }
     if (taken.has(channel)) continue;
     const written = readUnit(first.unitText ?? first.reading?.unitText ?? '');
-    if (channel !== 'sonicTemperature' && written && written.unit !== '1' && unitForChannel(channel, written)) {
+    if (
+      channel !== 'sonicTemperature' &&
+      written &&
+      written.unit !== '1' &&
+      unitForChannel(channel, written)
+    ) {
       // "p" in hPa is a pressure
       add(first, channel, 'likely');
       continue;
     }
     add(first, channel, 'doubtful');
     problems.push(
-      problem('quantity-doubtful', 'columns', `${columnLabel(first)} is taken as ${channelWords[channel]}; the name alone could mean something else. Please look.`, 'confirm', channel),
+      problem(
+        'quantity-doubtful',
+        'columns',
+        `${columnLabel(first)} is taken as ${channelWords[channel]}; the name alone could mean something else. Please look.`,
+        'confirm',
+        channel,
+      ),
     );
   }
 
   // status columns: by the instrument in the name, else by what stands before them
-  const statuses = candidates.filter((profile) => profile.reading?.channel === 'sonicStatus' || profile.reading?.channel === 'analyserStatus');
+  const statuses = candidates.filter(
+    (profile) => profile.reading?.channel === 'sonicStatus' || profile.reading?.channel === 'analyserStatus',
+  );
   for (const profile of statuses.filter((candidate) => candidate.reading?.strength === 'strong')) {
     const channel = profile.reading!.channel;
     if (!taken.has(channel)) add(profile, channel, 'sure');
   }
   const vague = statuses.filter((candidate) => candidate.reading?.strength === 'weak');
   for (const profile of vague) {
-    const gasBefore = picks.some((pick) => (pick.channel === 'co2' || pick.channel === 'h2o') && pick.profile.index < profile.index);
+    const gasBefore = picks.some(
+      (pick) => (pick.channel === 'co2' || pick.channel === 'h2o') && pick.profile.index < profile.index,
+    );
     const wish: ChannelKey = gasBefore ? 'analyserStatus' : 'sonicStatus';
     const other: ChannelKey = gasBefore ? 'sonicStatus' : 'analyserStatus';
     const channel = !taken.has(wish) ? wish : !taken.has(other) ? other : null;
     if (channel === null) continue;
     add(profile, channel, 'doubtful');
     problems.push(
-      problem('quantity-doubtful', 'columns', `${columnLabel(profile)} does not say whose status it is; taken as ${channelWords[channel]} because it follows ${gasBefore ? 'the gases' : 'the wind'}. Please look.`, 'confirm', channel),
+      problem(
+        'quantity-doubtful',
+        'columns',
+        `${columnLabel(profile)} does not say whose status it is; taken as ${channelWords[channel]} because it follows ${gasBefore ? 'the gases' : 'the wind'}. Please look.`,
+        'confirm',
+        channel,
+      ),
     );
   }
   return picks;
@@ -951,13 +1247,30 @@ function preferred(channel: ChannelKey, profiles: readonly Profile[]): Profile {
 }
 
 /** Without names: three winds side by side and a temperature, then gases and pressure by their range. */
-function pickByPosition(profiles: readonly Profile[], timeColumns: ReadonlySet<number>, problems: LayoutProblem[]): Pick[] {
-  const usable = profiles.filter((profile) => !timeColumns.has(profile.index) && profile.numbers.length > profile.tokens.length * 0.3);
+function pickByPosition(
+  profiles: readonly Profile[],
+  timeColumns: ReadonlySet<number>,
+  problems: LayoutProblem[],
+): Pick[] {
+  const usable = profiles.filter(
+    (profile) => !timeColumns.has(profile.index) && profile.numbers.length > profile.tokens.length * 0.3,
+  );
   const picks: Pick[] = [];
   const isWind = (profile: Profile | undefined): profile is Profile =>
-    profile !== undefined && !profile.isConstant && !profile.isWhole && profile.min > -60 && profile.max < 60 && profile.spread > 0.02 && profile.spread < 12;
+    profile !== undefined &&
+    !profile.isConstant &&
+    !profile.isWhole &&
+    profile.min > -60 &&
+    profile.max < 60 &&
+    profile.spread > 0.02 &&
+    profile.spread < 12;
   const isTemperature = (profile: Profile | undefined): profile is Profile =>
-    profile !== undefined && !profile.isConstant && (unitFits.sonicTemperature ?? []).some((fit) => profile.median >= fit.low && profile.median <= fit.high) && profile.spread < 8;
+    profile !== undefined &&
+    !profile.isConstant &&
+    (unitFits.sonicTemperature ?? []).some(
+      (fit) => profile.median >= fit.low && profile.median <= fit.high,
+    ) &&
+    profile.spread < 8;
   for (let at = 0; at + 3 < usable.length; at += 1) {
     const [u, v, w, t] = usable.slice(at, at + 4);
     if (!isWind(u) || !isWind(v) || !isWind(w) || !isTemperature(t)) continue;
@@ -966,7 +1279,9 @@ function pickByPosition(profiles: readonly Profile[], timeColumns: ReadonlySet<n
       picks.push({ profile, channel, quantityBy: 'position', confidence });
     };
     // the vertical wind has the smallest mean; if the third column has not, its place alone speaks for it
-    const isThirdSmallest = Math.abs(w.median) <= Math.min(Math.abs(u.median), Math.abs(v.median)) && w.spread <= Math.max(u.spread, v.spread);
+    const isThirdSmallest =
+      Math.abs(w.median) <= Math.min(Math.abs(u.median), Math.abs(v.median)) &&
+      w.spread <= Math.max(u.spread, v.spread);
     add(u, 'windU', 'likely');
     add(v, 'windV', 'likely');
     add(w, 'windW', isThirdSmallest ? 'likely' : 'doubtful');
@@ -977,23 +1292,57 @@ function pickByPosition(profiles: readonly Profile[], timeColumns: ReadonlySet<n
   if (picks.length > 0) {
     const after = picks[picks.length - 1]!.profile.index;
     const fits = (channel: ChannelKey, profile: Profile, units: readonly string[]): boolean =>
-      (unitFits[channel] ?? []).some((fit) => units.includes(fit.unit) && profile.median >= fit.low && profile.median <= fit.high);
-    const following = (): Profile[] => rest().filter((profile) => profile.index > after && !profile.isConstant && !profile.isWhole);
-    const co2 = following().find((profile) => fits('co2', profile, ['mg m-3', 'mmol m-3', 'umol mol-1']) && profile.spread < profile.median * 0.2);
+      (unitFits[channel] ?? []).some(
+        (fit) => units.includes(fit.unit) && profile.median >= fit.low && profile.median <= fit.high,
+      );
+    const following = (): Profile[] =>
+      rest().filter((profile) => profile.index > after && !profile.isConstant && !profile.isWhole);
+    const co2 = following().find(
+      (profile) =>
+        fits('co2', profile, ['mg m-3', 'mmol m-3', 'umol mol-1']) && profile.spread < profile.median * 0.2,
+    );
     if (co2) picks.push({ profile: co2, channel: 'co2', quantityBy: 'range', confidence: 'doubtful' });
     const h2o = co2
-      ? following().find((profile) => profile.index > co2.index && fits('h2o', profile, ['g m-3', 'mmol mol-1', 'mmol m-3']) && !fits('airPressure', profile, ['kPa', 'hPa', 'Pa']))
+      ? following().find(
+          (profile) =>
+            profile.index > co2.index &&
+            fits('h2o', profile, ['g m-3', 'mmol mol-1', 'mmol m-3']) &&
+            !fits('airPressure', profile, ['kPa', 'hPa', 'Pa']),
+        )
       : undefined;
     if (h2o) picks.push({ profile: h2o, channel: 'h2o', quantityBy: 'range', confidence: 'doubtful' });
-    const pressure = following().find((profile) => fits('airPressure', profile, ['kPa', 'hPa', 'Pa']) && profile.spread < profile.median * 0.01);
-    if (pressure) picks.push({ profile: pressure, channel: 'airPressure', quantityBy: 'range', confidence: 'doubtful' });
-    const codes = rest().filter((profile) => profile.index > after && profile.isWhole && profile.min >= 0 && profile.max < 65536 && profile.rising < 0.5);
+    const pressure = following().find(
+      (profile) =>
+        fits('airPressure', profile, ['kPa', 'hPa', 'Pa']) && profile.spread < profile.median * 0.01,
+    );
+    if (pressure)
+      picks.push({ profile: pressure, channel: 'airPressure', quantityBy: 'range', confidence: 'doubtful' });
+    const codes = rest().filter(
+      (profile) =>
+        profile.index > after &&
+        profile.isWhole &&
+        profile.min >= 0 &&
+        profile.max < 65536 &&
+        profile.rising < 0.5,
+    );
     const code = codes[codes.length - 1];
-    if (code) picks.push({ profile: code, channel: co2 && code.index > co2.index ? 'analyserStatus' : 'sonicStatus', quantityBy: 'position', confidence: 'doubtful' });
+    if (code)
+      picks.push({
+        profile: code,
+        channel: co2 && code.index > co2.index ? 'analyserStatus' : 'sonicStatus',
+        quantityBy: 'position',
+        confidence: 'doubtful',
+      });
   }
   for (const pick of picks) {
     problems.push(
-      problem('quantity-doubtful', 'columns', `Column ${pick.profile.index + 1} has no name; taken as ${channelWords[pick.channel]} by its ${pick.quantityBy === 'range' ? 'values' : 'place'}. Please look.`, 'confirm', pick.channel),
+      problem(
+        'quantity-doubtful',
+        'columns',
+        `Column ${pick.profile.index + 1} has no name; taken as ${channelWords[pick.channel]} by its ${pick.quantityBy === 'range' ? 'values' : 'place'}. Please look.`,
+        'confirm',
+        pick.channel,
+      ),
     );
   }
   return picks;
@@ -1003,15 +1352,21 @@ function pickByPosition(profiles: readonly Profile[], timeColumns: ReadonlySet<n
 
 function clockFromText(text: string): { offsetMinutes: number } | null {
   const offset = /\b(?:utc|gmt)\s*([+-−])\s*(\d{1,2})(?::?(\d{2}))?\b/i.exec(text);
-  if (offset) return { offsetMinutes: (offset[1] === '+' ? 1 : -1) * (Number(offset[2]) * 60 + Number(offset[3] ?? 0)) };
+  if (offset)
+    return {
+      offsetMinutes: (offset[1] === '+' ? 1 : -1) * (Number(offset[2]) * 60 + Number(offset[3] ?? 0)),
+    };
   return /\b(utc|gmt)\b/i.test(text.replace(/_/g, ' ')) ? { offsetMinutes: 0 } : null;
 }
 
-const clockOf = (offsetMinutes: number): Layout['clock'] => (offsetMinutes === 0 ? { kind: 'utc' } : { kind: 'fixed', offsetMinutes });
+const clockOf = (offsetMinutes: number): Layout['clock'] =>
+  offsetMinutes === 0 ? { kind: 'utc' } : { kind: 'fixed', offsetMinutes };
 
 function rateFromHeader(headerLines: readonly string[]): number | null {
   for (const line of headerLines) {
-    const match = /(\d+(?:\.\d+)?)\s*hz\b/i.exec(line) ?? /\b(?:rate|frequency|sampling)\D{0,12}(\d+(?:\.\d+)?)/i.exec(line);
+    const match =
+      /(\d+(?:\.\d+)?)\s*hz\b/i.exec(line) ??
+      /\b(?:rate|frequency|sampling)\D{0,12}(\d+(?:\.\d+)?)/i.exec(line);
     const value = match ? Number(match[1]) : Number.NaN;
     if (value >= 1 && value <= 100) return value;
   }
@@ -1044,7 +1399,14 @@ export function guessLayout(input: GuessInput): LayoutGuess {
     .filter((fields) => fields.length === dialect.width);
 
   if (!dialect.found || rows.length === 0) {
-    problems.push(problem('no-columns', 'delimiter', 'No rows with several values were found: this may not be a table of text. Choose the separator, or another file.', 'blocks'));
+    problems.push(
+      problem(
+        'no-columns',
+        'delimiter',
+        'No rows with several values were found: this may not be a table of text. Choose the separator, or another file.',
+        'blocks',
+      ),
+    );
   }
 
   // decimal mark
@@ -1054,11 +1416,24 @@ export function guessLayout(input: GuessInput): LayoutGuess {
   let decimal: '.' | ',' = withComma > withDot ? ',' : '.';
   let decimalSure: Confidence = 'sure';
   if (dialect.delimiter === 'comma' && withComma > 0) {
-    problems.push(problem('comma-twice', 'decimal', 'Comma is the separator and, in quotes, the decimal mark too. A layout cannot hold both: export the file again with semicolons.', 'blocks'));
+    problems.push(
+      problem(
+        'comma-twice',
+        'decimal',
+        'Comma is the separator and, in quotes, the decimal mark too. A layout cannot hold both: export the file again with semicolons.',
+        'blocks',
+      ),
+    );
     decimal = '.';
     decimalSure = 'doubtful';
   } else if (withComma > 0 && withDot > withComma * 0.1) {
-    problems.push(problem('mixed-decimals', 'decimal', `Numbers have a comma in ${withComma} places and a dot in ${withDot}. Taken as ${decimal === ',' ? 'comma' : 'dot'}: please look.`));
+    problems.push(
+      problem(
+        'mixed-decimals',
+        'decimal',
+        `Numbers have a comma in ${withComma} places and a dot in ${withDot}. Taken as ${decimal === ',' ? 'comma' : 'dot'}: please look.`,
+      ),
+    );
     decimalSure = 'doubtful';
   } else if (withComma === 0 && withDot === 0 && rows.length > 0) {
     problems.push(
@@ -1078,17 +1453,23 @@ export function guessLayout(input: GuessInput): LayoutGuess {
   const headerFields = headerLines.map((line) => fieldsOf(uncomment(line), dialect.delimiter));
   const nameScore = headerFields.map((fields) =>
     fields.length === dialect.width
-      ? fields.filter((field) => readName(field) !== null || readTimeName(field) !== null).length + (fields.every((field) => field !== '') ? 0.5 : 0)
+      ? fields.filter((field) => readName(field) !== null || readTimeName(field) !== null).length +
+        (fields.every((field) => field !== '') ? 0.5 : 0)
       : -1,
   );
   const unitScore = headerFields.map((fields) =>
-    fields.length >= dialect.width - 1 && fields.length <= dialect.width ? fields.filter((field) => readUnit(field) !== null).length : -1,
+    fields.length >= dialect.width - 1 && fields.length <= dialect.width
+      ? fields.filter((field) => readUnit(field) !== null).length
+      : -1,
   );
   const bestName = nameScore.indexOf(Math.max(...nameScore, -1));
   const nameRow = headerLines.length > 0 && (nameScore[bestName] ?? -1) >= 0.5 ? bestName : null;
   const unitCandidates = unitScore.map((score, row) => (row === nameRow ? -1 : score));
   const bestUnit = unitCandidates.indexOf(Math.max(...unitCandidates, -1));
-  const unitRow = headerLines.length > 0 && (unitCandidates[bestUnit] ?? -1) >= Math.max(2, dialect.width * 0.25) ? bestUnit : null;
+  const unitRow =
+    headerLines.length > 0 && (unitCandidates[bestUnit] ?? -1) >= Math.max(2, dialect.width * 0.25)
+      ? bestUnit
+      : null;
   const names = nameRow === null ? null : (headerFields[nameRow] ?? null);
   const units = unitRow === null ? null : (headerFields[unitRow] ?? null);
 
@@ -1108,21 +1489,40 @@ export function guessLayout(input: GuessInput): LayoutGuess {
         if (sentinel === null) return;
         missingTokens.add(token);
         if (sentinel === 'doubtful') {
-          problems.push(problem('sentinel-doubtful', 'missingTokens', `“${token}” in ${names?.[index] ? `“${names[index]}”` : `column ${index + 1}`} is far from every other value; taken as “no value”. Please look.`));
+          problems.push(
+            problem(
+              'sentinel-doubtful',
+              'missingTokens',
+              `“${token}” in ${names?.[index] ? `“${names[index]}”` : `column ${index + 1}`} is far from every other value; taken as “no value”. Please look.`,
+            ),
+          );
         }
       }
     });
   }
 
   const profiles = Array.from({ length: rows.length > 0 ? dialect.width : 0 }, (_, index) =>
-    profileOf(index, names?.[index] || null, units?.[index] || null, rows.map((fields) => fields[index] ?? ''), decimal, missingTokens),
+    profileOf(
+      index,
+      names?.[index] || null,
+      units?.[index] || null,
+      rows.map((fields) => fields[index] ?? ''),
+      decimal,
+      missingTokens,
+    ),
   );
 
   // time
   const nameDates = datesIn(input.fileName, 'file-name');
   const headerDates = headerLines.flatMap((line) => datesIn(line, 'header'));
   const headerRate = rateFromHeader(headerLines);
-  const timeGuess = guessTime({ profiles, fileName: input.fileName, nameDates, headerDates, rateHz: input.sampleRateHz ?? headerRate ?? 10 });
+  const timeGuess = guessTime({
+    profiles,
+    fileName: input.fileName,
+    nameDates,
+    headerDates,
+    rateHz: input.sampleRateHz ?? headerRate ?? 10,
+  });
   problems.push(...timeGuess.problems);
   const timeColumns = new Set(timeGuess.columns);
 
@@ -1135,7 +1535,8 @@ export function guessLayout(input: GuessInput): LayoutGuess {
   const proposals = new Map<number, ColumnProposal>();
   const columns: LayoutColumn[] = [];
   const unitOf = (pick: Pick): UnitPick => {
-    const other = pick.channel === 'h2o' ? gasKind.get('co2') : pick.channel === 'co2' ? gasKind.get('h2o') : undefined;
+    const other =
+      pick.channel === 'h2o' ? gasKind.get('co2') : pick.channel === 'co2' ? gasKind.get('h2o') : undefined;
     return pickUnit(pick, other ?? null);
   };
   // CO2 first: its density and mole fraction differ in their numbers, those of H2O do not
@@ -1144,7 +1545,8 @@ export function guessLayout(input: GuessInput): LayoutGuess {
   for (const pick of order) {
     const unit = unitOf(pick);
     unitPicks.set(pick, unit);
-    if (pick.channel === 'co2' || pick.channel === 'h2o') gasKind.set(pick.channel, !unit.unit.includes('mol-1'));
+    if (pick.channel === 'co2' || pick.channel === 'h2o')
+      gasKind.set(pick.channel, !unit.unit.includes('mol-1'));
   }
   for (const pick of picks) {
     const unit = unitPicks.get(pick)!;
@@ -1155,23 +1557,46 @@ export function guessLayout(input: GuessInput): LayoutGuess {
       index: profile.index,
       name: profile.name,
       unit: unit.unit,
-      knownBy: pick.quantityBy === 'name' ? (unit.by === 'unit-row' ? 'unit-row' : unit.by === 'range' ? 'range' : 'name') : pick.quantityBy === 'range' ? 'range' : 'position',
+      knownBy:
+        pick.quantityBy === 'name'
+          ? unit.by === 'unit-row'
+            ? 'unit-row'
+            : unit.by === 'range'
+              ? 'range'
+              : 'name'
+          : pick.quantityBy === 'range'
+            ? 'range'
+            : 'position',
     };
     let how = unit.how;
     if (channel === 'sonicStatus' || channel === 'analyserStatus') {
       const usual = profile.numbers.length > 0 ? mode(profile.numbers) : { value: 0, share: 0 };
       column.good = { codes: [usual.value], mask: null, equals: null };
-      how = profile.isConstant ? `constant ${usual.value}` : `${usual.value} in ${Math.round(usual.share * 100)} % of rows`;
+      how = profile.isConstant
+        ? `constant ${usual.value}`
+        : `${usual.value} in ${Math.round(usual.share * 100)} % of rows`;
       if (!(profile.isConstant && usual.value === 0)) {
         problems.push(
-          problem('good-codes', 'columns', `${channelWords[channel]}: ${how}. Which codes mean “good”? ${usual.value} is taken until somebody says.`, 'confirm', channel),
+          problem(
+            'good-codes',
+            'columns',
+            `${channelWords[channel]}: ${how}. Which codes mean “good”? ${usual.value} is taken until somebody says.`,
+            'confirm',
+            channel,
+          ),
         );
       }
     }
     if (channel === 'signalStrength') {
       column.higherIsBetter = !(profile.reading?.isFouling ?? false);
       problems.push(
-        problem('signal-direction', 'columns', `Signal strength: does a higher number mean a cleaner window? Taken as ${column.higherIsBetter ? 'yes' : 'no'}.`, 'confirm', channel),
+        problem(
+          'signal-direction',
+          'columns',
+          `Signal strength: does a higher number mean a cleaner window? Taken as ${column.higherIsBetter ? 'yes' : 'no'}.`,
+          'confirm',
+          channel,
+        ),
       );
     }
     columns.push(column);
@@ -1191,12 +1616,22 @@ export function guessLayout(input: GuessInput): LayoutGuess {
   }
   for (const channel of requiredChannels) {
     if (rows.length > 0 && !picks.some((pick) => pick.channel === channel)) {
-      problems.push(problem('quantity-missing', 'columns', `No column was found for ${channelWords[channel]}. Without it no flux can be computed: choose the column.`, 'blocks', channel));
+      problems.push(
+        problem(
+          'quantity-missing',
+          'columns',
+          `No column was found for ${channelWords[channel]}. Without it no flux can be computed: choose the column.`,
+          'blocks',
+          channel,
+        ),
+      );
     }
   }
 
   // clock
-  const utcName = profiles.some((profile) => timeColumns.has(profile.index) && /utc|gmt/i.test(profile.name ?? ''));
+  const utcName = profiles.some(
+    (profile) => timeColumns.has(profile.index) && /utc|gmt/i.test(profile.name ?? ''),
+  );
   const headerClock = headerLines.map(clockFromText).find((found) => found !== null) ?? null;
   let clock: Layout['clock'];
   let clockKnowledge: FieldKnowledge;
@@ -1214,12 +1649,24 @@ export function guessLayout(input: GuessInput): LayoutGuess {
     clockKnowledge = { confidence: 'likely', source: 'file-name', how: 'from the file’s name' };
   } else {
     clock = clockOf(input.utcOffsetMinutes);
-    clockKnowledge = { confidence: 'doubtful', source: 'set-up', how: 'station standard time; the file does not say' };
-    problems.push(problem('clock-unsaid', 'clock', 'The file does not say which clock its stamps follow. Taken as station standard time: an hour’s error moves every flux by an hour.'));
+    clockKnowledge = {
+      confidence: 'doubtful',
+      source: 'set-up',
+      how: 'station standard time; the file does not say',
+    };
+    problems.push(
+      problem(
+        'clock-unsaid',
+        'clock',
+        'The file does not say which clock its stamps follow. Taken as station standard time: an hour’s error moves every flux by an hour.',
+      ),
+    );
   }
 
   const endWords = /\b(end of|interval end|timestamp_?end|stamp marks end)\b/i;
-  const marksEnd = headerLines.some((line) => endWords.test(line)) || profiles.some((profile) => timeColumns.has(profile.index) && /end$/i.test(profile.name ?? ''));
+  const marksEnd =
+    headerLines.some((line) => endWords.test(line)) ||
+    profiles.some((profile) => timeColumns.has(profile.index) && /end$/i.test(profile.name ?? ''));
 
   const layout: Layout = {
     schema: 'gustbook/layout/1',
@@ -1248,58 +1695,154 @@ export function guessLayout(input: GuessInput): LayoutGuess {
     estimatedRateHz = spacing.rateHz;
     const tidy = tidyRate(spacing.rateHz, input.sampleRateHz);
     if (spacing.isCoarse) {
-      const place = dateSourceOf({ profiles, fileName: input.fileName, nameDates, headerDates, rateHz: tidy });
+      const place = dateSourceOf({
+        profiles,
+        fileName: input.fileName,
+        nameDates,
+        headerDates,
+        rateHz: tidy,
+      });
       if (place.source && place.date?.hasTime) {
         layout.time = { kind: 'start-and-rate', start: place.source };
-        timeKnowledge = { confidence: 'doubtful', source: place.source.from, how: `stamps are too coarse; start from the ${place.source.from === 'header' ? 'header' : 'file’s name'}, then the sampling rate` };
-        problems.push(problem('stamps-coarse', 'time', `Stamps are too coarse: about ${Math.round(spacing.rows / Math.max(1, spacing.rows - spacing.repeated))} rows share one. The start is taken from the ${place.source.from === 'header' ? 'header' : 'file’s name'}, then ${formatHz(tidy)}.`));
+        timeKnowledge = {
+          confidence: 'doubtful',
+          source: place.source.from,
+          how: `stamps are too coarse; start from the ${place.source.from === 'header' ? 'header' : 'file’s name'}, then the sampling rate`,
+        };
+        problems.push(
+          problem(
+            'stamps-coarse',
+            'time',
+            `Stamps are too coarse: about ${Math.round(spacing.rows / Math.max(1, spacing.rows - spacing.repeated))} rows share one. The start is taken from the ${place.source.from === 'header' ? 'header' : 'file’s name'}, then ${formatHz(tidy)}.`,
+          ),
+        );
       } else {
         timeKnowledge = { ...timeKnowledge, confidence: 'doubtful' };
-        problems.push(problem('stamps-coarse', 'time', 'Stamps are too coarse: several rows share one, so that all but the first would count as duplicates. Put a start time into the file’s name and choose “start and rate”.', 'blocks'));
+        problems.push(
+          problem(
+            'stamps-coarse',
+            'time',
+            'Stamps are too coarse: several rows share one, so that all but the first would count as duplicates. Put a start time into the file’s name and choose “start and rate”.',
+            'blocks',
+          ),
+        );
       }
     }
     if (!spacing.isEven) {
-      problems.push(problem('stamps-uneven', 'time', `${spacing.irregular} of ${spacing.rows - 1} steps between rows are uneven${spacing.backward > 0 ? `, ${spacing.backward} go back in time` : ''}. Gaps are kept as gaps.`));
+      problems.push(
+        problem(
+          'stamps-uneven',
+          'time',
+          `${spacing.irregular} of ${spacing.rows - 1} steps between rows are uneven${spacing.backward > 0 ? `, ${spacing.backward} go back in time` : ''}. Gaps are kept as gaps.`,
+        ),
+      );
     }
     layout.sampleRateHz = tidy >= 1 && tidy <= 100 ? tidy : (input.sampleRateHz ?? 10);
-    rateKnowledge = { confidence: 'sure', source: 'spacing', how: `${Number(spacing.rateHz.toFixed(2))} rows a second by the stamps` };
+    rateKnowledge = {
+      confidence: 'sure',
+      source: 'spacing',
+      how: `${Number(spacing.rateHz.toFixed(2))} rows a second by the stamps`,
+    };
     if (input.sampleRateHz !== null && Math.abs(tidy / input.sampleRateHz - 1) > 0.02) {
-      rateKnowledge = { confidence: 'doubtful', source: 'spacing', how: `${formatHz(tidy)} by the stamps, ${formatHz(input.sampleRateHz)} in the set-up` };
-      problems.push(problem('rate-contradicts', 'sampleRateHz', `The stamps say ${formatHz(tidy)}, the set-up ${formatHz(input.sampleRateHz)}. Taken: the stamps. One of them is wrong.`));
+      rateKnowledge = {
+        confidence: 'doubtful',
+        source: 'spacing',
+        how: `${formatHz(tidy)} by the stamps, ${formatHz(input.sampleRateHz)} in the set-up`,
+      };
+      problems.push(
+        problem(
+          'rate-contradicts',
+          'sampleRateHz',
+          `The stamps say ${formatHz(tidy)}, the set-up ${formatHz(input.sampleRateHz)}. Taken: the stamps. One of them is wrong.`,
+        ),
+      );
     }
     preview = previewLayout(input.text, input.isCutOff, input.fileName, layout);
   } else if (headerRate !== null) {
     layout.sampleRateHz = headerRate;
     rateKnowledge = { confidence: 'sure', source: 'header', how: 'from the header' };
     if (input.sampleRateHz !== null && input.sampleRateHz !== headerRate) {
-      rateKnowledge = { confidence: 'doubtful', source: 'header', how: `${formatHz(headerRate)} in the header, ${formatHz(input.sampleRateHz)} in the set-up` };
-      problems.push(problem('rate-contradicts', 'sampleRateHz', `The header says ${formatHz(headerRate)}, the set-up ${formatHz(input.sampleRateHz)}. Taken: the header. One of them is wrong.`));
+      rateKnowledge = {
+        confidence: 'doubtful',
+        source: 'header',
+        how: `${formatHz(headerRate)} in the header, ${formatHz(input.sampleRateHz)} in the set-up`,
+      };
+      problems.push(
+        problem(
+          'rate-contradicts',
+          'sampleRateHz',
+          `The header says ${formatHz(headerRate)}, the set-up ${formatHz(input.sampleRateHz)}. Taken: the header. One of them is wrong.`,
+        ),
+      );
     }
     preview = previewLayout(input.text, input.isCutOff, input.fileName, layout);
   } else if (input.sampleRateHz !== null) {
     rateKnowledge = { confidence: 'likely', source: 'set-up', how: 'from the set-up' };
   } else {
     rateKnowledge = { confidence: 'doubtful', source: 'usual', how: 'nothing says it' };
-    problems.push(problem('rate-unsaid', 'sampleRateHz', 'Neither stamps, header nor set-up say how many rows a second there are. Taken as 10 Hz: please write the rate.', 'blocks'));
+    problems.push(
+      problem(
+        'rate-unsaid',
+        'sampleRateHz',
+        'Neither stamps, header nor set-up say how many rows a second there are. Taken as 10 Hz: please write the rate.',
+        'blocks',
+      ),
+    );
   }
-  if (rows.length > 0 && preview.rowsWithoutStamp > preview.rows.length * 0.1 && !problems.some((known) => known.field === 'time' && known.severity === 'blocks')) {
-    problems.push(problem('stamps-unreadable', 'time', `${preview.rowsWithoutStamp} of the first ${preview.rows.length} rows have no readable time. Look at where the time comes from.`, 'blocks'));
+  if (
+    rows.length > 0 &&
+    preview.rowsWithoutStamp > preview.rows.length * 0.1 &&
+    !problems.some((known) => known.field === 'time' && known.severity === 'blocks')
+  ) {
+    problems.push(
+      problem(
+        'stamps-unreadable',
+        'time',
+        `${preview.rowsWithoutStamp} of the first ${preview.rows.length} rows have no readable time. Look at where the time comes from.`,
+        'blocks',
+      ),
+    );
   }
 
   const headerHow = nameRow !== null ? 'the line with the names' : 'lines before the first row of numbers';
   return {
     layout,
     knowledge: {
-      delimiter: { confidence: dialect.found ? (dialect.isClear ? 'sure' : 'likely') : 'doubtful', source: 'values', how: 'every row has the same number of values' },
-      decimal: { confidence: decimalSure, source: 'values', how: decimal === ',' ? 'numbers are written with a comma' : 'numbers are written with a dot' },
-      quoted: { confidence: 'sure', source: 'values', how: dialect.quoted ? 'quotes stand around values' : 'no quotes in the rows' },
+      delimiter: {
+        confidence: dialect.found ? (dialect.isClear ? 'sure' : 'likely') : 'doubtful',
+        source: 'values',
+        how: 'every row has the same number of values',
+      },
+      decimal: {
+        confidence: decimalSure,
+        source: 'values',
+        how: decimal === ',' ? 'numbers are written with a comma' : 'numbers are written with a dot',
+      },
+      quoted: {
+        confidence: 'sure',
+        source: 'values',
+        how: dialect.quoted ? 'quotes stand around values' : 'no quotes in the rows',
+      },
       headerRows: { confidence: dialect.found ? 'sure' : 'doubtful', source: 'values', how: headerHow },
-      nameRow: { confidence: nameRow === null ? 'likely' : 'sure', source: 'header', how: nameRow === null ? 'no line of names' : 'from the header' },
-      unitRow: { confidence: unitRow === null ? 'likely' : 'sure', source: 'header', how: unitRow === null ? 'no line of units' : 'from the header' },
+      nameRow: {
+        confidence: nameRow === null ? 'likely' : 'sure',
+        source: 'header',
+        how: nameRow === null ? 'no line of names' : 'from the header',
+      },
+      unitRow: {
+        confidence: unitRow === null ? 'likely' : 'sure',
+        source: 'header',
+        how: unitRow === null ? 'no line of units' : 'from the header',
+      },
       missingTokens: {
-        confidence: problems.some((known) => known.code === 'sentinel-doubtful') ? 'doubtful' : missingTokens.size > usualMissingTokens.length ? 'likely' : 'sure',
+        confidence: problems.some((known) => known.code === 'sentinel-doubtful')
+          ? 'doubtful'
+          : missingTokens.size > usualMissingTokens.length
+            ? 'likely'
+            : 'sure',
         source: missingTokens.size > usualMissingTokens.length ? 'values' : 'usual',
-        how: missingTokens.size > usualMissingTokens.length ? 'seen in the rows' : 'the usual ones; none seen',
+        how:
+          missingTokens.size > usualMissingTokens.length ? 'seen in the rows' : 'the usual ones; none seen',
       },
       sampleRateHz: rateKnowledge,
       clock: clockKnowledge,
@@ -1332,6 +1875,11 @@ export function guessLayout(input: GuessInput): LayoutGuess {
 /** A name for the layout, from the letters of the file's name. */
 function suggestName(fileName: string): string {
   const stem = fileName.replace(/(\.(csv|txt|dat|tsv|gz|asc|raw))+$/i, '');
-  const letters = stem.replace(/\d+/g, ' ').replace(/[_\-.]+/g, ' ').replace(/\b[TZ]\b/g, ' ').replace(/\s+/g, ' ').trim();
+  const letters = stem
+    .replace(/\d+/g, ' ')
+    .replace(/[_\-.]+/g, ' ')
+    .replace(/\b[TZ]\b/g, ' ')
+    .replace(/\s+/g, ' ')
+    .trim();
   return (letters || 'Raw files').slice(0, 60);
 }

@@ -134,15 +134,19 @@ function isPossible(parts: DateParts): boolean {
 /** Wall-clock milliseconds of date parts, as if the clock were UTC; null without year and day. */
 export function wallMsOf(parts: DateParts): number | null {
   if (parts.year === undefined) return null;
-  const timeMs = ((parts.hour ?? 0) * 3600 + (parts.minute ?? 0) * 60) * 1000 + Math.round((parts.second ?? 0) * 1e6) / 1e3;
-  if (parts.dayOfYear !== undefined) return Date.UTC(parts.year, 0, 1) + (parts.dayOfYear - 1) * 86_400_000 + timeMs;
+  const timeMs =
+    ((parts.hour ?? 0) * 3600 + (parts.minute ?? 0) * 60) * 1000 +
+    Math.round((parts.second ?? 0) * 1e6) / 1e3;
+  if (parts.dayOfYear !== undefined)
+    return Date.UTC(parts.year, 0, 1) + (parts.dayOfYear - 1) * 86_400_000 + timeMs;
   if (parts.month === undefined || parts.day === undefined) return null;
   const midnight = Date.UTC(parts.year, parts.month - 1, parts.day);
   // 31 June becomes 1 July in Date.UTC: no such day
   return new Date(midnight).getUTCMonth() === parts.month - 1 ? midnight + timeMs : null;
 }
 
-const isoExpression = /^(\d{4})-(\d{2})-(\d{2})(?:[T ](\d{2}):(\d{2})(?::(\d{2}(?:[.,]\d+)?))?)?\s*(Z|[+-]\d{2}:?\d{2})?$/;
+const isoExpression =
+  /^(\d{4})-(\d{2})-(\d{2})(?:[T ](\d{2}):(\d{2})(?::(\d{2}(?:[.,]\d+)?))?)?\s*(Z|[+-]\d{2}:?\d{2})?$/;
 
 /** An ISO 8601 stamp; `offsetMinutes` is null where the stamp names no zone. */
 export function readIso(token: string): { wallMs: number; offsetMinutes: number | null } | null {
@@ -168,7 +172,8 @@ export function readIso(token: string): { wallMs: number; offsetMinutes: number 
 /** Seconds since midnight of hh:mm[:ss[.f]] or hhmmss[.f]; NaN when it is no time of day. */
 export function readClockS(token: string): number {
   const match =
-    /^(\d{1,2}):(\d{2})(?::(\d{2}(?:[.,]\d+)?))?$/.exec(token) ?? /^(\d{2})(\d{2})(\d{2}(?:[.,]\d+)?)$/.exec(token);
+    /^(\d{1,2}):(\d{2})(?::(\d{2}(?:[.,]\d+)?))?$/.exec(token) ??
+    /^(\d{2})(\d{2})(\d{2}(?:[.,]\d+)?)$/.exec(token);
   if (!match) return Number.NaN;
   const hours = Number(match[1]);
   const minutes = Number(match[2]);
@@ -179,7 +184,11 @@ export function readClockS(token: string): number {
 type PartSource = { from: 'file-name' | 'header'; pattern: string };
 
 /** Date parts from file name or header by a layout's pattern. */
-export function readPartSource(source: PartSource, fileName: string, headerLines: readonly string[]): DateParts | null {
+export function readPartSource(
+  source: PartSource,
+  fileName: string,
+  headerLines: readonly string[],
+): DateParts | null {
   if (source.from === 'file-name') return readPattern(fileName, source.pattern);
   for (const line of headerLines) {
     const parts = readPattern(line, source.pattern);
@@ -213,7 +222,9 @@ export function stampReader(
       return (fields) => {
         const dateToken = fields[time.dateColumn] ?? '';
         const dateMs =
-          time.dateFormat === 'iso' ? (readIso(dateToken)?.wallMs ?? null) : wallOrNull(readPattern(dateToken, time.dateFormat));
+          time.dateFormat === 'iso'
+            ? (readIso(dateToken)?.wallMs ?? null)
+            : wallOrNull(readPattern(dateToken, time.dateFormat));
         const seconds = readClockS(fields[time.timeColumn] ?? '');
         return dateMs === null || Number.isNaN(seconds) ? null : dateMs + Math.round(seconds * 1e6) / 1e3;
       };
@@ -270,7 +281,8 @@ function dayOfYearMs(
   const wholeDay = Math.floor(day);
   let seconds: number;
   if (time.timeFormat === 'fraction-of-day') {
-    seconds = (time.timeColumn === null ? day - wholeDay : numberOf(fields[time.timeColumn] ?? '', decimal)) * 86_400;
+    seconds =
+      (time.timeColumn === null ? day - wholeDay : numberOf(fields[time.timeColumn] ?? '', decimal)) * 86_400;
   } else if (time.timeFormat === 'clock') {
     seconds = readClockS(fields[time.timeColumn ?? -1] ?? '');
   } else {
@@ -346,7 +358,8 @@ export function spacingOf(stampsMs: readonly number[]): Spacing | null {
   const backward = steps.filter((step) => step < 0).length;
   const positive = steps.filter((step) => step > 0).sort((a, b) => a - b);
   const usual = positive[Math.floor(positive.length / 2)] ?? Number.NaN;
-  if (Number.isNaN(usual)) return { rows, rateHz: Number.NaN, irregular: 0, repeated, backward, isCoarse: true, isEven: false };
+  if (Number.isNaN(usual))
+    return { rows, rateHz: Number.NaN, irregular: 0, repeated, backward, isCoarse: true, isEven: false };
   if (repeated > rows * 0.4) {
     // several rows share a stamp: count rows between the changes, leaving the cut first and last group out
     const groups: number[] = [];
@@ -361,12 +374,28 @@ export function spacingOf(stampsMs: readonly number[]): Spacing | null {
     const inner = groups.slice(1);
     const perStamp = inner.length > 0 ? inner.reduce((sum, value) => sum + value, 0) / inner.length : size;
     const irregular = inner.filter((value) => Math.abs(value - perStamp) > 0.5).length;
-    return { rows, rateHz: (perStamp * 1000) / usual, irregular, repeated, backward, isCoarse: true, isEven: irregular === 0 && backward === 0 };
+    return {
+      rows,
+      rateHz: (perStamp * 1000) / usual,
+      irregular,
+      repeated,
+      backward,
+      isCoarse: true,
+      isEven: irregular === 0 && backward === 0,
+    };
   }
   const irregular = steps.filter((step) => Math.abs(step - usual) > usual / 2).length;
   const regular = steps.filter((step) => Math.abs(step - usual) <= usual / 2);
   const meanStep = regular.reduce((sum, step) => sum + step, 0) / regular.length;
-  return { rows, rateHz: 1000 / meanStep, irregular, repeated, backward, isCoarse: false, isEven: irregular === 0 };
+  return {
+    rows,
+    rateHz: 1000 / meanStep,
+    irregular,
+    repeated,
+    backward,
+    isCoarse: false,
+    isEven: irregular === 0,
+  };
 }
 
 export function offsetOf(clock: Layout['clock']): number {
@@ -390,7 +419,9 @@ export function previewLayout(text: string, isCutOff: boolean, fileName: string,
     rows.push({ line: layout.headerRows + index, fields, wallMs: readStamp(fields) });
   });
   const headerFields = (row: number | null): string[] | null =>
-    row === null || headerLines[row] === undefined ? null : fieldsOf(uncomment(headerLines[row]), layout.delimiter);
+    row === null || headerLines[row] === undefined
+      ? null
+      : fieldsOf(uncomment(headerLines[row]), layout.delimiter);
   const missing = new Set(['', ...layout.missingTokens]);
   const columns = layout.columns.map((column): ColumnSummary => {
     let missingCount = 0;

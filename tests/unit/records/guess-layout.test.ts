@@ -60,7 +60,9 @@ function clockOf(row: number, rate: number, startS: number, decimals = 2): strin
 }
 
 function file(header: string[], row: (index: number, s: Scan) => string, rows = 120): string {
-  return [...header, ...Array.from({ length: rows }, (_, index) => row(index, scan(index)))].join('\n') + '\n';
+  return (
+    [...header, ...Array.from({ length: rows }, (_, index) => row(index, scan(index)))].join('\n') + '\n'
+  );
 }
 
 function guess(text: string, fileName: string, more: Partial<GuessInput> = {}): LayoutGuess {
@@ -68,11 +70,29 @@ function guess(text: string, fileName: string, more: Partial<GuessInput> = {}): 
 }
 
 function columnsOf(found: LayoutGuess): Partial<Record<ChannelKey, [number, string]>> {
-  return Object.fromEntries(found.layout.columns.map((column) => [column.channel, [column.index, column.unit]]));
+  return Object.fromEntries(
+    found.layout.columns.map((column) => [column.channel, [column.index, column.unit]]),
+  );
 }
-const codesOf = (found: LayoutGuess): ProblemCode[] => [...new Set(found.problems.map((problem) => problem.code))].sort();
-const fields = (layout: Layout): Pick<Layout, 'delimiter' | 'decimal' | 'quoted' | 'headerRows' | 'nameRow' | 'unitRow' | 'sampleRateHz' | 'clock' | 'stampMarks' | 'time'> => {
-  const { delimiter, decimal, quoted, headerRows, nameRow, unitRow, sampleRateHz, clock, stampMarks, time } = layout;
+const codesOf = (found: LayoutGuess): ProblemCode[] =>
+  [...new Set(found.problems.map((problem) => problem.code))].sort();
+const fields = (
+  layout: Layout,
+): Pick<
+  Layout,
+  | 'delimiter'
+  | 'decimal'
+  | 'quoted'
+  | 'headerRows'
+  | 'nameRow'
+  | 'unitRow'
+  | 'sampleRateHz'
+  | 'clock'
+  | 'stampMarks'
+  | 'time'
+> => {
+  const { delimiter, decimal, quoted, headerRows, nameRow, unitRow, sampleRateHz, clock, stampMarks, time } =
+    layout;
   return { delimiter, decimal, quoted, headerRows, nameRow, unitRow, sampleRateHz, clock, stampMarks, time };
 };
 const plusOne: Layout['clock'] = { kind: 'fixed', offsetMinutes: 60 };
@@ -107,9 +127,15 @@ describe('guessLayout on ordinary files', () => {
       h2o: [6, 'g m-3'],
       analyserStatus: [7, 'code'],
     });
-    expect(found.layout.columns.find((column) => column.channel === 'analyserStatus')?.good).toEqual({ codes: [0], mask: null, equals: null });
+    expect(found.layout.columns.find((column) => column.channel === 'analyserStatus')?.good).toEqual({
+      codes: [0],
+      mask: null,
+      equals: null,
+    });
     expect(codesOf(found)).toEqual(['clock-unsaid', 'unit-from-range']);
-    expect(found.problems.find((problem) => problem.channel === 'co2')?.message).toContain('fits mg m-3, not mmol m-3');
+    expect(found.problems.find((problem) => problem.channel === 'co2')?.message).toContain(
+      'fits mg m-3, not mmol m-3',
+    );
     expect(found.preview.spacing?.isEven).toBe(true);
     expect(found.estimatedRateHz).toBeCloseTo(10, 6);
     // 11:30 at UTC+1 is 10:30 UTC
@@ -120,8 +146,14 @@ describe('guessLayout on ordinary files', () => {
   it('reads semicolons with decimal commas, a date with dots and a unit row', () => {
     const comma = (value: string): string => value.replace('.', ',');
     const found = guess(
-      file(['Datum;Time;Ux;Uy;Uz;Ts;CO2;H2O;P', 'dd.mm.yyyy;hh:mm:ss;m/s;m/s;m/s;°C;mmol/m³;mmol/m³;hPa'], (i, s) =>
-        ['22.06.2027', comma(clockOf(i, 20, morning)), ...[s.u, s.v, s.w, s.tC, s.co2Mmol, s.h2oMmol, s.pHPa].map(comma)].join(';'),
+      file(
+        ['Datum;Time;Ux;Uy;Uz;Ts;CO2;H2O;P', 'dd.mm.yyyy;hh:mm:ss;m/s;m/s;m/s;°C;mmol/m³;mmol/m³;hPa'],
+        (i, s) =>
+          [
+            '22.06.2027',
+            comma(clockOf(i, 20, morning)),
+            ...[s.u, s.v, s.w, s.tC, s.co2Mmol, s.h2oMmol, s.pHPa].map(comma),
+          ].join(';'),
       ),
       'ostrey.txt',
       { sampleRateHz: 20 },
@@ -178,19 +210,35 @@ describe('guessLayout on ordinary files', () => {
 
   it('reads epoch seconds with fractions', () => {
     const found = guess(
-      file(['unix_time,u,v,w,Ts (K)'], (i, s) => [(1813663800 + i / 10).toFixed(1), s.u, s.v, s.w, s.tK].join(',')),
+      file(['unix_time,u,v,w,Ts (K)'], (i, s) =>
+        [(1813663800 + i / 10).toFixed(1), s.u, s.v, s.w, s.tK].join(','),
+      ),
       'a.csv',
     );
     expect(found.layout.time).toEqual({ kind: 'epoch', column: 0, unit: 's' });
     expect(columnsOf(found).sonicTemperature).toEqual([4, 'K']);
-    expect(found.layout.columns.find((column) => column.channel === 'sonicTemperature')?.knownBy).toBe('name');
+    expect(found.layout.columns.find((column) => column.channel === 'sonicTemperature')?.knownBy).toBe(
+      'name',
+    );
     expect(found.estimatedRateHz).toBeCloseTo(10, 6);
   });
 
   it('reads blanks without a header: year, day of year, hhmm and seconds, quantities by place and values', () => {
     const found = guess(
       file([], (i, s) =>
-        ['2027', '173', '1130', (i / 10).toFixed(1).padStart(5), s.u.padStart(7), s.v.padStart(7), s.w.padStart(7), s.tC, s.co2Ppm, s.h2oFraction, '0'].join(' '),
+        [
+          '2027',
+          '173',
+          '1130',
+          (i / 10).toFixed(1).padStart(5),
+          s.u.padStart(7),
+          s.v.padStart(7),
+          s.w.padStart(7),
+          s.tC,
+          s.co2Ppm,
+          s.h2oFraction,
+          '0',
+        ].join(' '),
       ),
       'fen.dat',
     );
@@ -204,7 +252,14 @@ describe('guessLayout on ordinary files', () => {
       sampleRateHz: 10,
       clock: plusOne,
       stampMarks: 'start',
-      time: { kind: 'day-of-year', year: { column: 0 }, dayColumn: 1, timeColumn: 2, timeFormat: 'hhmm', secondsColumn: 3 },
+      time: {
+        kind: 'day-of-year',
+        year: { column: 0 },
+        dayColumn: 1,
+        timeColumn: 2,
+        timeFormat: 'hhmm',
+        secondsColumn: 3,
+      },
     });
     expect(columnsOf(found)).toMatchObject({
       windU: [4, 'm s-1'],
@@ -222,7 +277,9 @@ describe('guessLayout on ordinary files', () => {
 
   it('reads the day of the year with its fraction, year from the file name', () => {
     const found = guess(
-      file(['doy u v w ts'], (i, s) => [(173 + (morning + i / 10) / 86400).toFixed(9), s.u, s.v, s.w, s.tC].join('  ')),
+      file(['doy u v w ts'], (i, s) =>
+        [(173 + (morning + i / 10) / 86400).toFixed(9), s.u, s.v, s.w, s.tC].join('  '),
+      ),
       'hof_2027_173.txt',
     );
     expect(found.layout.time).toEqual({
@@ -239,25 +296,45 @@ describe('guessLayout on ordinary files', () => {
 
   it('reads day of year and seconds of the day', () => {
     const found = guess(
-      file(['year,doy,seconds_of_day,U,V,W,T_sonic'], (i, s) => ['2027', '173', (41400 + i / 20).toFixed(2), s.u, s.v, s.w, s.tC].join(',')),
+      file(['year,doy,seconds_of_day,U,V,W,T_sonic'], (i, s) =>
+        ['2027', '173', (41400 + i / 20).toFixed(2), s.u, s.v, s.w, s.tC].join(','),
+      ),
       'x.csv',
       { sampleRateHz: 20 },
     );
-    expect(found.layout.time).toEqual({ kind: 'day-of-year', year: { column: 0 }, dayColumn: 1, timeColumn: 2, timeFormat: 'seconds-of-day', secondsColumn: null });
+    expect(found.layout.time).toEqual({
+      kind: 'day-of-year',
+      year: { column: 0 },
+      dayColumn: 1,
+      timeColumn: 2,
+      timeFormat: 'seconds-of-day',
+      secondsColumn: null,
+    });
     expect(found.layout.sampleRateHz).toBe(20);
   });
 
   it('reads day of year and a clock column', () => {
     const found = guess(
-      file(['year;doy;time;u;v;w;ts'], (i, s) => ['2027', '173', clockOf(i, 10, morning, 1), s.u, s.v, s.w, s.tC].join(';')),
+      file(['year;doy;time;u;v;w;ts'], (i, s) =>
+        ['2027', '173', clockOf(i, 10, morning, 1), s.u, s.v, s.w, s.tC].join(';'),
+      ),
       'x.csv',
     );
-    expect(found.layout.time).toEqual({ kind: 'day-of-year', year: { column: 0 }, dayColumn: 1, timeColumn: 2, timeFormat: 'clock', secondsColumn: null });
+    expect(found.layout.time).toEqual({
+      kind: 'day-of-year',
+      year: { column: 0 },
+      dayColumn: 1,
+      timeColumn: 2,
+      timeFormat: 'clock',
+      secondsColumn: null,
+    });
   });
 
   it('reads stamps of fourteen digits', () => {
     const found = guess(
-      file(['timestamp,u,v,w,ts'], (i, s) => [`20270622${clockOf(i, 10, morning, 1).replaceAll(':', '')}`, s.u, s.v, s.w, s.tC].join(',')),
+      file(['timestamp,u,v,w,ts'], (i, s) =>
+        [`20270622${clockOf(i, 10, morning, 1).replaceAll(':', '')}`, s.u, s.v, s.w, s.tC].join(','),
+      ),
       'x.csv',
     );
     expect(found.layout.time).toEqual({ kind: 'stamp', column: 0, format: 'YYYYMMDDhhmmss' });
@@ -269,7 +346,11 @@ describe('guessLayout on ordinary files', () => {
       file(['time,u,v,w,ts'], (i, s) => [clockOf(i, 10, 86395, 1), s.u, s.v, s.w, s.tC].join(',')),
       'HOF-2027-06-22_2359.csv',
     );
-    expect(found.layout.time).toEqual({ kind: 'time-of-day', column: 0, date: { from: 'file-name', pattern: '*-YYYY-MM-DD_hhmm*' } });
+    expect(found.layout.time).toEqual({
+      kind: 'time-of-day',
+      column: 0,
+      date: { from: 'file-name', pattern: '*-YYYY-MM-DD_hhmm*' },
+    });
     expect(found.preview.spacing?.isEven).toBe(true);
     expect(found.preview.lastMs! - found.preview.firstMs!).toBeCloseTo(11_900, 3);
     expect(found.preview.lastMs).toBeGreaterThan(Date.UTC(2027, 5, 22, 23, 0));
@@ -277,11 +358,17 @@ describe('guessLayout on ordinary files', () => {
 
   it('takes the date from the header when the name has none', () => {
     const found = guess(
-      file(['# Station: Hollin Fen (invented)', '# Date: 2027-06-22', '# time u v w ts'], (i, s) => [clockOf(i, 10, morning, 1), s.u, s.v, s.w, s.tC].join('\t')),
+      file(['# Station: Hollin Fen (invented)', '# Date: 2027-06-22', '# time u v w ts'], (i, s) =>
+        [clockOf(i, 10, morning, 1), s.u, s.v, s.w, s.tC].join('\t'),
+      ),
       'latest.txt',
     );
     expect(found.layout.headerRows).toBe(3);
-    expect(found.layout.time).toEqual({ kind: 'time-of-day', column: 0, date: { from: 'header', pattern: '# Date: YYYY-MM-DD' } });
+    expect(found.layout.time).toEqual({
+      kind: 'time-of-day',
+      column: 0,
+      date: { from: 'header', pattern: '# Date: YYYY-MM-DD' },
+    });
     expect(found.preview.firstMs).toBe(Date.UTC(2027, 5, 22, 10, 30));
     expect(codesOf(found)).not.toContain('date-candidates');
   });
@@ -292,7 +379,10 @@ describe('guessLayout on ordinary files', () => {
       'hollin_20270622T113000Z.csv',
       { sampleRateHz: 20 },
     );
-    expect(found.layout.time).toEqual({ kind: 'start-and-rate', start: { from: 'file-name', pattern: '*_YYYYMMDDThhmmss*' } });
+    expect(found.layout.time).toEqual({
+      kind: 'start-and-rate',
+      start: { from: 'file-name', pattern: '*_YYYYMMDDThhmmss*' },
+    });
     expect(found.layout.sampleRateHz).toBe(20);
     expect(found.knowledge.sampleRateHz.source).toBe('set-up');
     expect(found.layout.clock).toEqual({ kind: 'utc' });
@@ -305,23 +395,38 @@ describe('guessLayout on ordinary files', () => {
 
   it('takes rate and clock from the header', () => {
     const found = guess(
-      file(['Start 2027-06-22 11:30:00', 'Sampling rate: 25 Hz', 'Clock: UTC+2', 'u;v;w;sos'], (_, s) => [s.u, s.v, s.w, s.sos].join(';')),
+      file(['Start 2027-06-22 11:30:00', 'Sampling rate: 25 Hz', 'Clock: UTC+2', 'u;v;w;sos'], (_, s) =>
+        [s.u, s.v, s.w, s.sos].join(';'),
+      ),
       'a.csv',
       { sampleRateHz: null },
     );
     expect(found.layout.sampleRateHz).toBe(25);
     expect(found.knowledge.sampleRateHz).toMatchObject({ source: 'header', confidence: 'sure' });
     expect(found.layout.clock).toEqual({ kind: 'fixed', offsetMinutes: 120 });
-    expect(found.layout.time).toEqual({ kind: 'start-and-rate', start: { from: 'header', pattern: 'Start YYYY-MM-DD hh:mm:ss' } });
+    expect(found.layout.time).toEqual({
+      kind: 'start-and-rate',
+      start: { from: 'header', pattern: 'Start YYYY-MM-DD hh:mm:ss' },
+    });
     expect(columnsOf(found).sonicTemperature).toEqual([3, 'm s-1']);
     expect(found.preview.firstMs).toBe(Date.UTC(2027, 5, 22, 9, 30));
   });
 
   it('reads the zone that stamps carry', () => {
-    const zulu = guess(file(['t_utc,u,v,w,ts'], (i, s) => [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC].join(',')), 'a.csv');
+    const zulu = guess(
+      file(['t_utc,u,v,w,ts'], (i, s) =>
+        [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC].join(','),
+      ),
+      'a.csv',
+    );
     expect(zulu.layout.clock).toEqual({ kind: 'utc' });
     expect(zulu.knowledge.clock.confidence).toBe('sure');
-    const shifted = guess(file(['t,u,v,w,ts'], (i, s) => [`2027-06-22T${clockOf(i, 10, morning, 1)}+05:30`, s.u, s.v, s.w, s.tC].join(',')), 'a.csv');
+    const shifted = guess(
+      file(['t,u,v,w,ts'], (i, s) =>
+        [`2027-06-22T${clockOf(i, 10, morning, 1)}+05:30`, s.u, s.v, s.w, s.tC].join(','),
+      ),
+      'a.csv',
+    );
     expect(shifted.layout.clock).toEqual({ kind: 'fixed', offsetMinutes: 330 });
     expect(codesOf(shifted)).not.toContain('clock-unsaid');
   });
@@ -329,9 +434,27 @@ describe('guessLayout on ordinary files', () => {
   it('reads quoted stamps and tokens below a header of four lines, with names and units in it', () => {
     const found = guess(
       file(
-        ['"Hollin Fen","logger 3","20 Hz"', '"TIMESTAMP","RECORD","Ux","Uy","Uz","T_SONIC","diag_sonic","CO2_density","H2O_density","diag_gas","signal_strength","P"', '"TS","RN","m/s","m/s","m/s","deg C","","mg/m^3","g/m^3","","%","kPa"', '"","","Smp","Smp","Smp","Smp","Smp","Smp","Smp","Smp","Smp","Smp"'],
+        [
+          '"Hollin Fen","logger 3","20 Hz"',
+          '"TIMESTAMP","RECORD","Ux","Uy","Uz","T_SONIC","diag_sonic","CO2_density","H2O_density","diag_gas","signal_strength","P"',
+          '"TS","RN","m/s","m/s","m/s","deg C","","mg/m^3","g/m^3","","%","kPa"',
+          '"","","Smp","Smp","Smp","Smp","Smp","Smp","Smp","Smp","Smp","Smp"',
+        ],
         (i, s) =>
-          [`"2027-06-22 ${clockOf(i, 20, morning)}"`, String(918273 + i), s.u, s.v, s.w, s.tC, '0', i === 7 ? '"NAN"' : s.co2Mg, s.h2oG, '0', '97.5', s.pKPa].join(','),
+          [
+            `"2027-06-22 ${clockOf(i, 20, morning)}"`,
+            String(918273 + i),
+            s.u,
+            s.v,
+            s.w,
+            s.tC,
+            '0',
+            i === 7 ? '"NAN"' : s.co2Mg,
+            s.h2oG,
+            '0',
+            '97.5',
+            s.pKPa,
+          ].join(','),
       ),
       'fen_fast.dat',
       { sampleRateHz: 20 },
@@ -372,14 +495,22 @@ describe('guessLayout on ordinary files', () => {
       ),
       'a.csv',
     );
-    expect(columnsOf(found)).toMatchObject({ co2: [5, 'umol mol-1 dry'], h2o: [6, 'mmol mol-1 dry'], sonicTemperature: [4, 'K'] });
+    expect(columnsOf(found)).toMatchObject({
+      co2: [5, 'umol mol-1 dry'],
+      h2o: [6, 'mmol mol-1 dry'],
+      sonicTemperature: [4, 'K'],
+    });
     expect(found.problems).toEqual([]);
   });
 
   it('reads pipes, and names with blanks and brackets', () => {
     const found = guess(
-      file(['Time | Wind U (m/s) | Wind V (m/s) | Vertical wind (m/s) | Sonic temperature (K) | Water vapour (g/m3) | Air pressure (Pa)'], (i, s) =>
-        [`2027-06-22 ${clockOf(i, 10, morning, 1)}`, s.u, s.v, s.w, s.tK, s.h2oG, s.pPa].join(' | '),
+      file(
+        [
+          'Time | Wind U (m/s) | Wind V (m/s) | Vertical wind (m/s) | Sonic temperature (K) | Water vapour (g/m3) | Air pressure (Pa)',
+        ],
+        (i, s) =>
+          [`2027-06-22 ${clockOf(i, 10, morning, 1)}`, s.u, s.v, s.w, s.tK, s.h2oG, s.pPa].join(' | '),
       ),
       'a.txt',
     );
@@ -397,7 +528,9 @@ describe('guessLayout on ordinary files', () => {
 
   it('tells a sonic temperature from an air temperature', () => {
     const found = guess(
-      file(['time,u,v,w,Ts,T'], (i, s) => [`2027-06-22T${clockOf(i, 10, morning, 1)}`, s.u, s.v, s.w, s.tK, s.tC].join(',')),
+      file(['time,u,v,w,Ts,T'], (i, s) =>
+        [`2027-06-22T${clockOf(i, 10, morning, 1)}`, s.u, s.v, s.w, s.tK, s.tC].join(','),
+      ),
       'a.csv',
     );
     expect(columnsOf(found)).toMatchObject({ sonicTemperature: [4, 'K'], airTemperature: [5, 'degC'] });
@@ -406,7 +539,14 @@ describe('guessLayout on ordinary files', () => {
   it('keeps tokens for “no value”, words and sentinels', () => {
     const found = guess(
       file(['time;u;v;w;ts;co2 [mg/m3]'], (i, s) =>
-        [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, i % 9 === 0 ? '---' : s.tC, i % 7 === 0 ? '-9999.0' : s.co2Mg].join(';'),
+        [
+          `2027-06-22T${clockOf(i, 10, morning, 1)}Z`,
+          s.u,
+          s.v,
+          s.w,
+          i % 9 === 0 ? '---' : s.tC,
+          i % 7 === 0 ? '-9999.0' : s.co2Mg,
+        ].join(';'),
       ),
       'a.csv',
     );
@@ -416,7 +556,9 @@ describe('guessLayout on ordinary files', () => {
   });
 
   it('leaves out a last line that was cut', () => {
-    const text = file(['time,u,v,w,ts'], (i, s) => [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC].join(','));
+    const text = file(['time,u,v,w,ts'], (i, s) =>
+      [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC].join(','),
+    );
     const found = guess(`${text}2027-06-22T11:30:12.0Z,1.2`, 'a.csv', { isCutOff: true });
     expect(found.preview.rows).toHaveLength(120);
     expect(found.preview.rowsWithoutStamp).toBe(0);
@@ -425,7 +567,9 @@ describe('guessLayout on ordinary files', () => {
 
 describe('guessLayout on files that can be read in two ways', () => {
   it('asks which of day and month comes first', () => {
-    const text = file(['when,u,v,w,ts'], (i, s) => [`05/06/2027 ${clockOf(i, 10, morning, 1)}`, s.u, s.v, s.w, s.tC].join(','));
+    const text = file(['when,u,v,w,ts'], (i, s) =>
+      [`05/06/2027 ${clockOf(i, 10, morning, 1)}`, s.u, s.v, s.w, s.tC].join(','),
+    );
     const found = guess(text, 'a.csv');
     expect(found.layout.time).toEqual({ kind: 'stamp', column: 0, format: 'DD/MM/YYYY hh:mm:ss' });
     expect(found.knowledge.time.confidence).toBe('doubtful');
@@ -437,14 +581,28 @@ describe('guessLayout on files that can be read in two ways', () => {
   });
 
   it('knows that a thirteenth month does not exist', () => {
-    const found = guess(file(['when,u,v,w,ts'], (i, s) => [`06/22/2027 ${clockOf(i, 10, morning, 1)}`, s.u, s.v, s.w, s.tC].join(',')), 'a.csv');
+    const found = guess(
+      file(['when,u,v,w,ts'], (i, s) =>
+        [`06/22/2027 ${clockOf(i, 10, morning, 1)}`, s.u, s.v, s.w, s.tC].join(','),
+      ),
+      'a.csv',
+    );
     expect(found.layout.time).toEqual({ kind: 'stamp', column: 0, format: 'MM/DD/YYYY hh:mm:ss' });
     expect(codesOf(found)).not.toContain('day-month-order');
   });
 
   it('does not decide alone between CO2 of 560 mg m-3 on a mountain and of 560 ppm in a canopy', () => {
     const found = guess(
-      file(['time,u,v,w,ts,co2'], (i, s) => [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC, wave(i, 560, 8, 1).toFixed(1)].join(',')),
+      file(['time,u,v,w,ts,co2'], (i, s) =>
+        [
+          `2027-06-22T${clockOf(i, 10, morning, 1)}Z`,
+          s.u,
+          s.v,
+          s.w,
+          s.tC,
+          wave(i, 560, 8, 1).toFixed(1),
+        ].join(','),
+      ),
       'a.csv',
     );
     const doubt = found.problems.find((problem) => problem.channel === 'co2');
@@ -455,7 +613,9 @@ describe('guessLayout on files that can be read in two ways', () => {
 
   it('does not decide alone whether vapour of 10 is g m-3 or mmol mol-1', () => {
     const found = guess(
-      file(['time,u,v,w,ts,q'], (i, s) => [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC, s.h2oG].join(',')),
+      file(['time,u,v,w,ts,q'], (i, s) =>
+        [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC, s.h2oG].join(','),
+      ),
       'a.csv',
     );
     expect(found.problems.find((problem) => problem.channel === 'h2o')?.code).toBe('unit-doubtful');
@@ -476,7 +636,9 @@ describe('guessLayout on files that can be read in two ways', () => {
 
   it('asks about two columns that could be CO2, and prefers the density', () => {
     const found = guess(
-      file(['time,u,v,w,ts,co2_ppm,co2_density'], (i, s) => [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC, s.co2Ppm, s.co2Mg].join(',')),
+      file(['time,u,v,w,ts,co2_ppm,co2_density'], (i, s) =>
+        [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC, s.co2Ppm, s.co2Mg].join(','),
+      ),
       'a.csv',
     );
     expect(columnsOf(found).co2).toEqual([6, 'mg m-3']);
@@ -486,65 +648,125 @@ describe('guessLayout on files that can be read in two ways', () => {
   it('asks whose status an unnamed status is, and which codes are good when they vary', () => {
     const found = guess(
       file(['time,u,v,w,ts,status,co2 [mg/m3],diag'], (i, s) =>
-        [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC, '0', s.co2Mg, i % 10 === 0 ? '240' : '249'].join(','),
+        [
+          `2027-06-22T${clockOf(i, 10, morning, 1)}Z`,
+          s.u,
+          s.v,
+          s.w,
+          s.tC,
+          '0',
+          s.co2Mg,
+          i % 10 === 0 ? '240' : '249',
+        ].join(','),
       ),
       'a.csv',
     );
     expect(columnsOf(found)).toMatchObject({ sonicStatus: [5, 'code'], analyserStatus: [7, 'code'] });
-    expect(found.layout.columns.find((column) => column.channel === 'analyserStatus')?.good?.codes).toEqual([249]);
+    expect(found.layout.columns.find((column) => column.channel === 'analyserStatus')?.good?.codes).toEqual([
+      249,
+    ]);
     expect(found.problems.filter((problem) => problem.code === 'quantity-doubtful')).toHaveLength(2);
-    expect(found.problems.find((problem) => problem.code === 'good-codes')?.message).toContain('249 in 90 % of rows');
+    expect(found.problems.find((problem) => problem.code === 'good-codes')?.message).toContain(
+      '249 in 90 % of rows',
+    );
   });
 
   it('reads x y z as the wind only as a set, and says that t is taken as the sonic temperature', () => {
-    const found = guess(file(['time,x,y,z,t'], (i, s) => [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC].join(',')), 'a.csv');
-    expect(columnsOf(found)).toMatchObject({ windU: [1, 'm s-1'], windV: [2, 'm s-1'], windW: [3, 'm s-1'], sonicTemperature: [4, 'degC'] });
+    const found = guess(
+      file(['time,x,y,z,t'], (i, s) =>
+        [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC].join(','),
+      ),
+      'a.csv',
+    );
+    expect(columnsOf(found)).toMatchObject({
+      windU: [1, 'm s-1'],
+      windV: [2, 'm s-1'],
+      windW: [3, 'm s-1'],
+      sonicTemperature: [4, 'degC'],
+    });
     expect(found.columns[1]?.confidence).toBe('likely');
-    expect(found.problems.find((problem) => problem.channel === 'sonicTemperature')?.code).toBe('quantity-doubtful');
+    expect(found.problems.find((problem) => problem.channel === 'sonicTemperature')?.code).toBe(
+      'quantity-doubtful',
+    );
   });
 
   it('takes large winds as cm s-1 and asks', () => {
     const centi = (value: string): string => (Number(value) * 100).toFixed(0);
     const found = guess(
-      file(['time,u,v,w,ts'], (i, s) => [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, centi(s.u), centi(s.v), centi(s.w), s.tC].join(',')),
+      file(['time,u,v,w,ts'], (i, s) =>
+        [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, centi(s.u), centi(s.v), centi(s.w), s.tC].join(','),
+      ),
       'a.csv',
     );
-    expect(columnsOf(found)).toMatchObject({ windU: [1, 'cm s-1'], windV: [2, 'cm s-1'], windW: [3, 'cm s-1'] });
-    expect(found.problems.filter((problem) => problem.code === 'unit-doubtful').map((problem) => problem.channel)).toEqual(['windU', 'windV', 'windW']);
+    expect(columnsOf(found)).toMatchObject({
+      windU: [1, 'cm s-1'],
+      windV: [2, 'cm s-1'],
+      windW: [3, 'cm s-1'],
+    });
+    expect(
+      found.problems.filter((problem) => problem.code === 'unit-doubtful').map((problem) => problem.channel),
+    ).toEqual(['windU', 'windV', 'windW']);
   });
 
   it('takes start and rate when several rows share a stamp', () => {
     const found = guess(
-      file(['time,u,v,w,ts'], (i, s) => [`2027-06-22 ${clockOf(i, 20, morning, 0)}`, s.u, s.v, s.w, s.tC].join(','), 400),
+      file(
+        ['time,u,v,w,ts'],
+        (i, s) => [`2027-06-22 ${clockOf(i, 20, morning, 0)}`, s.u, s.v, s.w, s.tC].join(','),
+        400,
+      ),
       'HOF_20270622_1130.csv',
       { sampleRateHz: 20 },
     );
     expect(found.preview.spacing).toBeNull();
-    expect(found.layout.time).toEqual({ kind: 'start-and-rate', start: { from: 'file-name', pattern: '*_YYYYMMDD_hhmm*' } });
+    expect(found.layout.time).toEqual({
+      kind: 'start-and-rate',
+      start: { from: 'file-name', pattern: '*_YYYYMMDD_hhmm*' },
+    });
     expect(found.layout.sampleRateHz).toBe(20);
-    expect(found.problems.find((problem) => problem.code === 'stamps-coarse')).toMatchObject({ severity: 'confirm' });
-    expect(found.problems.find((problem) => problem.code === 'stamps-coarse')?.message).toContain('about 20 rows share one');
+    expect(found.problems.find((problem) => problem.code === 'stamps-coarse')).toMatchObject({
+      severity: 'confirm',
+    });
+    expect(found.problems.find((problem) => problem.code === 'stamps-coarse')?.message).toContain(
+      'about 20 rows share one',
+    );
     // without a start in the name there is no safe way
     const unsafe = guess(
-      file(['time,u,v,w,ts'], (i, s) => [`2027-06-22 ${clockOf(i, 20, morning, 0)}`, s.u, s.v, s.w, s.tC].join(','), 400),
+      file(
+        ['time,u,v,w,ts'],
+        (i, s) => [`2027-06-22 ${clockOf(i, 20, morning, 0)}`, s.u, s.v, s.w, s.tC].join(','),
+        400,
+      ),
       'a.csv',
       { sampleRateHz: 20 },
     );
-    expect(unsafe.problems.find((problem) => problem.code === 'stamps-coarse')).toMatchObject({ severity: 'blocks' });
+    expect(unsafe.problems.find((problem) => problem.code === 'stamps-coarse')).toMatchObject({
+      severity: 'blocks',
+    });
   });
 
   it('asks which of two dates in the header is the start', () => {
     const found = guess(
-      file(['calibrated 2026-03-01', 'begin 2027-06-22 11:30', 'u,v,w,ts'], (_, s) => [s.u, s.v, s.w, s.tC].join(',')),
+      file(['calibrated 2026-03-01', 'begin 2027-06-22 11:30', 'u,v,w,ts'], (_, s) =>
+        [s.u, s.v, s.w, s.tC].join(','),
+      ),
       'a.csv',
     );
-    expect(found.layout.time).toEqual({ kind: 'start-and-rate', start: { from: 'header', pattern: 'begin YYYY-MM-DD hh:mm' } });
+    expect(found.layout.time).toEqual({
+      kind: 'start-and-rate',
+      start: { from: 'header', pattern: 'begin YYYY-MM-DD hh:mm' },
+    });
     expect(codesOf(found)).toContain('date-candidates');
     expect(found.preview.firstMs).toBe(Date.UTC(2027, 5, 22, 10, 30));
   });
 
   it('says when rate of stamps and of the set-up disagree', () => {
-    const found = guess(file(['time,u,v,w,ts'], (i, s) => [`2027-06-22T${clockOf(i, 20, morning)}Z`, s.u, s.v, s.w, s.tC].join(',')), 'a.csv');
+    const found = guess(
+      file(['time,u,v,w,ts'], (i, s) =>
+        [`2027-06-22T${clockOf(i, 20, morning)}Z`, s.u, s.v, s.w, s.tC].join(','),
+      ),
+      'a.csv',
+    );
     expect(found.layout.sampleRateHz).toBe(20);
     expect(found.knowledge.sampleRateHz.confidence).toBe('doubtful');
     expect(found.problems.find((problem) => problem.code === 'rate-contradicts')?.message).toBe(
@@ -554,7 +776,9 @@ describe('guessLayout on files that can be read in two ways', () => {
 
   it('counts uneven steps', () => {
     const found = guess(
-      file(['time,u,v,w,ts'], (i, s) => [`2027-06-22T${clockOf(i < 60 ? i : i + 30, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC].join(',')),
+      file(['time,u,v,w,ts'], (i, s) =>
+        [`2027-06-22T${clockOf(i < 60 ? i : i + 30, 10, morning, 1)}Z`, s.u, s.v, s.w, s.tC].join(','),
+      ),
       'a.csv',
     );
     expect(found.preview.spacing).toMatchObject({ isEven: false, irregular: 1, backward: 0 });
@@ -564,11 +788,15 @@ describe('guessLayout on files that can be read in two ways', () => {
 
   it('asks about a doubtful sentinel instead of swallowing it', () => {
     const found = guess(
-      file(['time,u,v,w,ts'], (i, s) => [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, i === 5 ? '-99' : s.tC].join(',')),
+      file(['time,u,v,w,ts'], (i, s) =>
+        [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.w, i === 5 ? '-99' : s.tC].join(','),
+      ),
       'a.csv',
     );
     expect(found.layout.missingTokens).toContain('-99');
-    expect(found.problems.find((problem) => problem.code === 'sentinel-doubtful')?.message).toContain('“-99” in “ts”');
+    expect(found.problems.find((problem) => problem.code === 'sentinel-doubtful')?.message).toContain(
+      '“-99” in “ts”',
+    );
   });
 });
 
@@ -576,35 +804,74 @@ describe('guessLayout on files that cannot be read safely', () => {
   it('refuses quoted decimal commas between commas', () => {
     const quoted = (value: string): string => `"${value.replace('.', ',')}"`;
     const found = guess(
-      file(['time,u,v,w,ts'], (i, s) => [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, quoted(s.u), quoted(s.v), quoted(s.w), quoted(s.tC)].join(',')),
+      file(['time,u,v,w,ts'], (i, s) =>
+        [
+          `2027-06-22T${clockOf(i, 10, morning, 1)}Z`,
+          quoted(s.u),
+          quoted(s.v),
+          quoted(s.w),
+          quoted(s.tC),
+        ].join(','),
+      ),
       'a.csv',
     );
-    expect(found.problems.find((problem) => problem.code === 'comma-twice')).toMatchObject({ severity: 'blocks', field: 'decimal' });
+    expect(found.problems.find((problem) => problem.code === 'comma-twice')).toMatchObject({
+      severity: 'blocks',
+      field: 'decimal',
+    });
   });
 
   it('refuses bare decimal commas between commas', () => {
-    const found = guess(file([], (_, s) => [s.u, s.v, s.w, s.tC].map((value) => value.replace('.', ',')).join(',')), 'HOF_20270622_1130.csv');
-    expect(found.problems.find((problem) => problem.code === 'no-decimals')).toMatchObject({ severity: 'blocks' });
+    const found = guess(
+      file([], (_, s) => [s.u, s.v, s.w, s.tC].map((value) => value.replace('.', ',')).join(',')),
+      'HOF_20270622_1130.csv',
+    );
+    expect(found.problems.find((problem) => problem.code === 'no-decimals')).toMatchObject({
+      severity: 'blocks',
+    });
   });
 
   it('says that no date is to be found', () => {
-    const found = guess(file(['u,v,w,ts'], (_, s) => [s.u, s.v, s.w, s.tC].join(',')), 'latest.csv');
-    expect(found.problems.find((problem) => problem.code === 'date-unsaid')).toMatchObject({ severity: 'blocks', field: 'time' });
+    const found = guess(
+      file(['u,v,w,ts'], (_, s) => [s.u, s.v, s.w, s.tC].join(',')),
+      'latest.csv',
+    );
+    expect(found.problems.find((problem) => problem.code === 'date-unsaid')).toMatchObject({
+      severity: 'blocks',
+      field: 'time',
+    });
   });
 
   it('says that columns of year, month and day cannot be joined', () => {
     const header = ['year,month,day,hour,minute,second,u,v,w,ts'];
-    const row = (i: number, s: Scan): string => ['2027', '6', '22', '11', '30', (i / 10).toFixed(1), s.u, s.v, s.w, s.tC].join(',');
-    expect(guess(file(header, row), 'a.csv').problems.find((problem) => problem.code === 'time-columns-separate')).toMatchObject({ severity: 'blocks' });
+    const row = (i: number, s: Scan): string =>
+      ['2027', '6', '22', '11', '30', (i / 10).toFixed(1), s.u, s.v, s.w, s.tC].join(',');
+    expect(
+      guess(file(header, row), 'a.csv').problems.find((problem) => problem.code === 'time-columns-separate'),
+    ).toMatchObject({ severity: 'blocks' });
     const named = guess(file(header, row), 'a_20270622_1130.csv');
-    expect(named.problems.find((problem) => problem.code === 'time-columns-separate')).toMatchObject({ severity: 'confirm' });
-    expect(named.layout.time).toEqual({ kind: 'start-and-rate', start: { from: 'file-name', pattern: '*_YYYYMMDD_hhmm*' } });
+    expect(named.problems.find((problem) => problem.code === 'time-columns-separate')).toMatchObject({
+      severity: 'confirm',
+    });
+    expect(named.layout.time).toEqual({
+      kind: 'start-and-rate',
+      start: { from: 'file-name', pattern: '*_YYYYMMDD_hhmm*' },
+    });
     expect(columnsOf(named).windU).toEqual([6, 'm s-1']);
   });
 
   it('says which required quantity is missing', () => {
-    const found = guess(file(['time,u,v,ts'], (i, s) => [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.tC].join(',')), 'a.csv');
-    expect(found.problems.filter((problem) => problem.code === 'quantity-missing').map((problem) => problem.channel)).toEqual(['windW']);
+    const found = guess(
+      file(['time,u,v,ts'], (i, s) =>
+        [`2027-06-22T${clockOf(i, 10, morning, 1)}Z`, s.u, s.v, s.tC].join(','),
+      ),
+      'a.csv',
+    );
+    expect(
+      found.problems
+        .filter((problem) => problem.code === 'quantity-missing')
+        .map((problem) => problem.channel),
+    ).toEqual(['windW']);
   });
 
   it('finds no table in prose, in one column, and in nothing', () => {

@@ -1,12 +1,29 @@
 import { describe, expect, it } from 'vitest';
 import { guessLayout } from '../../../processing/records/guess-layout';
 import { bestLayout, layoutFit } from '../../../processing/records/layout-fit';
-import { fieldsOf, readClockS, readIso, readPattern, spacingOf, wallMsOf } from '../../../processing/records/preview';
+import {
+  fieldsOf,
+  readClockS,
+  readIso,
+  readPattern,
+  spacingOf,
+  wallMsOf,
+} from '../../../processing/records/preview';
 
 // invented rows: 10 a second, names and stamps of an ordinary file
-const rows = Array.from({ length: 60 }, (_, i) => `2027-06-22T11:30:${String(Math.floor(i / 10)).padStart(2, '0')}.${i % 10}Z,${(2 + Math.sin(i)).toFixed(2)},-1.10,0.${10 + (i % 7)},18.${10 + (i % 9)}`);
+const rows = Array.from(
+  { length: 60 },
+  (_, i) =>
+    `2027-06-22T11:30:${String(Math.floor(i / 10)).padStart(2, '0')}.${i % 10}Z,${(2 + Math.sin(i)).toFixed(2)},-1.10,0.${10 + (i % 7)},18.${10 + (i % 9)}`,
+);
 const text = ['time,u,v,w,ts', ...rows, ''].join('\n');
-const layout = guessLayout({ text, isCutOff: false, fileName: 'a.csv', sampleRateHz: 10, utcOffsetMinutes: 0 }).layout;
+const layout = guessLayout({
+  text,
+  isCutOff: false,
+  fileName: 'a.csv',
+  sampleRateHz: 10,
+  utcOffsetMinutes: 0,
+}).layout;
 
 describe('layoutFit', () => {
   it('gives 1 to the layout of the very file', () => {
@@ -22,8 +39,13 @@ describe('layoutFit', () => {
 
   it('gives nothing to rows that are too short, and little to another rate or header', () => {
     expect(layoutFit(layout, text.replaceAll(/,18\.\d+/g, ''), false, 'a.csv').score).toBe(0);
-    expect(layoutFit({ ...layout, sampleRateHz: 20 }, text, false, 'a.csv')).toEqual({ score: 0.6, misfits: ['10 rows a second, the layout says 20'] });
-    expect(layoutFit(layout, rows.join('\n'), false, 'a.csv').misfits).toContain('the header holds a row of numbers');
+    expect(layoutFit({ ...layout, sampleRateHz: 20 }, text, false, 'a.csv')).toEqual({
+      score: 0.6,
+      misfits: ['10 rows a second, the layout says 20'],
+    });
+    expect(layoutFit(layout, rows.join('\n'), false, 'a.csv').misfits).toContain(
+      'the header holds a row of numbers',
+    );
     expect(layoutFit(layout, '', false, 'a.csv').score).toBe(0);
   });
 
@@ -41,9 +63,22 @@ describe('layoutFit', () => {
 describe('reading dates and fields for the preview', () => {
   it('reads patterns with touching and with separated parts', () => {
     // 22 June is day 173 of 2027 (31 + 28 + 31 + 30 + 31 + 22)
-    expect(readPattern('HOF_20270622_1130.csv', '*_YYYYMMDD_hhmm*')).toEqual({ year: 2027, month: 6, day: 22, hour: 11, minute: 30 });
+    expect(readPattern('HOF_20270622_1130.csv', '*_YYYYMMDD_hhmm*')).toEqual({
+      year: 2027,
+      month: 6,
+      day: 22,
+      hour: 11,
+      minute: 30,
+    });
     expect(readPattern('1/6/2027', 'DD/MM/YYYY')).toEqual({ year: 2027, month: 6, day: 1 });
-    expect(readPattern('270622-113005.25', 'YYMMDD-hhmmss')).toEqual({ year: 2027, month: 6, day: 22, hour: 11, minute: 30, second: 5.25 });
+    expect(readPattern('270622-113005.25', 'YYMMDD-hhmmss')).toEqual({
+      year: 2027,
+      month: 6,
+      day: 22,
+      hour: 11,
+      minute: 30,
+      second: 5.25,
+    });
     expect(wallMsOf(readPattern('x2027173', 'xYYYYDDD')!)).toBe(Date.UTC(2027, 5, 22));
   });
 
@@ -55,8 +90,14 @@ describe('reading dates and fields for the preview', () => {
   });
 
   it('keeps the zone of an ISO stamp apart from its wall clock', () => {
-    expect(readIso('2027-06-22 11:30:00.05+05:30')).toEqual({ wallMs: Date.UTC(2027, 5, 22, 11, 30, 0, 50), offsetMinutes: 330 });
-    expect(readIso('2027-06-22T11:30:00')).toEqual({ wallMs: Date.UTC(2027, 5, 22, 11, 30), offsetMinutes: null });
+    expect(readIso('2027-06-22 11:30:00.05+05:30')).toEqual({
+      wallMs: Date.UTC(2027, 5, 22, 11, 30, 0, 50),
+      offsetMinutes: 330,
+    });
+    expect(readIso('2027-06-22T11:30:00')).toEqual({
+      wallMs: Date.UTC(2027, 5, 22, 11, 30),
+      offsetMinutes: null,
+    });
   });
 
   it('splits quoted fields, runs of blanks, and empty fields', () => {
@@ -66,9 +107,18 @@ describe('reading dates and fields for the preview', () => {
   });
 
   it('tells even, jumping and shared stamps apart', () => {
-    expect(spacingOf([0, 100, 200, 300])).toMatchObject({ rateHz: 10, irregular: 0, isEven: true, isCoarse: false });
+    expect(spacingOf([0, 100, 200, 300])).toMatchObject({
+      rateHz: 10,
+      irregular: 0,
+      isEven: true,
+      isCoarse: false,
+    });
     expect(spacingOf([0, 100, 200, 1200, 1100])).toMatchObject({ irregular: 2, backward: 1, isEven: false });
-    expect(spacingOf([0, 0, 1000, 1000, 1000, 1000, 2000, 2000, 2000, 2000, 3000])).toMatchObject({ rateHz: 4, isCoarse: true, isEven: true });
+    expect(spacingOf([0, 0, 1000, 1000, 1000, 1000, 2000, 2000, 2000, 2000, 3000])).toMatchObject({
+      rateHz: 4,
+      isCoarse: true,
+      isEven: true,
+    });
     expect(spacingOf([0, 100])).toBeNull();
   });
 });
