@@ -59,7 +59,7 @@ export const demoSetUp: SetUp = {
     responseTimeS: 0,
     signalStrengthLimitPercent: null,
   },
-  separation: { northM: 0.17, eastM: -0.05, upM: 0 },
+  separation: { northM: 0.12, eastM: -0.13, upM: 0 },
   sampleRateHz: 20,
   mastSectorHalfWidthDeg: 45,
   disturbedSectors: [],
@@ -123,6 +123,7 @@ const driver: DriverSettings = {
   co2: [416, 12],
   windSpread: 'integral-model',
   latitudeDeg: demoSetUp.latitudeDeg,
+  scalarCorrelation: [0.33, 0.25],
 };
 
 /** Wind direction at the hours of the day [deg], not wrapped; the night wind comes round to the mast's side once. */

@@ -21,12 +21,13 @@ import type { CospectrumFamily } from './reference-shapes';
 /** Order of the six series everywhere in the generator. */
 export const turbulenceKeys = ['w', 'u', 'v', 'temperature', 'vapour', 'co2'] as const;
 export type TurbulenceKey = (typeof turbulenceKeys)[number];
-const scalarKeys = ['temperature', 'vapour', 'co2'] as const;
 
 /**
  * - `gauss`: Gaussian series; the realised covariances scatter about the targets as those of real half hours do.
- * - `matched`: a linear mix of such series whose sample covariance matrix equals the target; also without correlation to a straight
- *   line, so that slow means can be added without touching a flux.
+ * - `matched`: such series mixed band by band, so that the sample covariance matrix equals the ensemble's in some twenty bands of
+ *   frequency and therefore in total. Mixing whole series would do for the total, but it lends a scalar some of the spectrum of w and
+ *   makes its cospectrum up to twice too high where sensors blur. w is also kept free of correlation to a straight line, so that slow
+ *   means can be added without touching a flux.
  * - `quad`: random phases only; every spectral line has exactly the model's power and cospectrum.
  */
 export type GeneratorMode = 'gauss' | 'matched' | 'quad';
@@ -56,6 +57,8 @@ export interface Turbulence {
   series: Record<TurbulenceKey, Float64Array>;
   /** Normalised cospectra at the lines, summing to 1: of w with u and of w with every scalar. */
   cospectra: { u: Float64Array; temperature: Float64Array; vapour: Float64Array; co2: Float64Array };
+  /** Covariances of the ensemble, in the order of `turbulenceKeys`; `matched` series have exactly these. */
+  covarianceMatrix: number[][];
 }
 
 /**
@@ -154,10 +157,34 @@ export function generateTurbulence(targets: TurbulenceTargets, random: SplitMix6
       im[s][k] = amplitude * (rho * zIm[0] + rest * zIm[s]);
     }
   }
+  const correlation = (key: TurbulenceKey, k: number) =>
+    key === 'w' ? 1 : key === 'v' ? 0 : coherence[key][k];
+  /** Adds the ensemble's covariance matrix of the lines [from, to). */
+  const ensemble = (from: number, to: number): number[][] => {
+    const matrix = turbulenceKeys.map(() => [0, 0, 0, 0, 0, 0]);
+    for (let k = from; k < to; k++) {
+      for (let i = 0; i < 6; i++) {
+        const [a, rhoA] = [turbulenceKeys[i], correlation(turbulenceKeys[i], k)];
+        for (let j = 0; j <= i; j++) {
+          const [b, rhoB] = [turbulenceKeys[j], correlation(turbulenceKeys[j], k)];
+          const left = i === j ? 1 : i > 2 && j > 2 ? targets.residualCorrelation[i - 3][j - 3] : 0;
+          const shared = rhoA * rhoB + left * Math.sqrt((1 - rhoA * rhoA) * (1 - rhoB * rhoB));
+          matrix[i][j] += shared * Math.sqrt(power[a][k] * power[b][k]) * df;
+        }
+      }
+    }
+    for (let i = 0; i < 6; i++) for (let j = i + 1; j < 6; j++) matrix[i][j] = matrix[j][i];
+    return matrix;
+  };
+  const covarianceMatrix = turbulenceKeys.map(() => [0, 0, 0, 0, 0, 0]);
+  for (const [from, to] of bands(n)) {
+    const wanted = ensemble(from, to);
+    wanted.forEach((row, i) => row.forEach((value, j) => (covarianceMatrix[i][j] += value)));
+    if (mode === 'matched') matchBand(re, im, from, to, n, wanted);
+  }
   const columns = turbulenceKeys.map(() => new Float64Array(n));
   for (let s = 0; s < 6; s += 2)
     linesToSeries(re[s], im[s], re[s + 1], im[s + 1], columns[s], columns[s + 1]);
-  if (mode === 'matched') matchCovariances(columns, targetMatrix(targets));
 
   const cospectrum = (key: 'u' | 'temperature' | 'vapour' | 'co2') => {
     const out = new Float64Array(n / 2);
@@ -179,26 +206,8 @@ export function generateTurbulence(targets: TurbulenceTargets, random: SplitMix6
       vapour: cospectrum('vapour'),
       co2: cospectrum('co2'),
     },
+    covarianceMatrix,
   };
-}
-
-/** The covariance matrix that `matched` series have, in the order of `turbulenceKeys`. */
-export function targetMatrix(targets: TurbulenceTargets): number[][] {
-  const { variances, covariances, residualCorrelation } = targets;
-  const withW = turbulenceKeys.map((key) => (key === 'w' ? variances.w : key === 'v' ? 0 : covariances[key]));
-  return turbulenceKeys.map((a, i) =>
-    turbulenceKeys.map((b, j) => {
-      if (i === 0) return withW[j];
-      if (j === 0) return withW[i];
-      if (i === j) return variances[a];
-      const shared = (withW[i] * withW[j]) / variances.w;
-      const ia = scalarKeys.indexOf(a as (typeof scalarKeys)[number]);
-      const ib = scalarKeys.indexOf(b as (typeof scalarKeys)[number]);
-      if (ia < 0 || ib < 0) return shared;
-      const left = (key: TurbulenceKey, c: number) => variances[key] - (c * c) / variances.w;
-      return shared + residualCorrelation[ia][ib] * Math.sqrt(left(a, withW[i]) * left(b, withW[j]));
-    }),
-  );
 }
 
 /** Scales an array in place so that it sums to `total`. */
@@ -270,52 +279,68 @@ function linesToSeries(
   sharedFft(n).inverse(a, b);
 }
 
-/** Replaces the columns by mixes of them with exactly the wanted sample covariances and no correlation to a straight line. */
-function matchCovariances(columns: Float64Array[], target: number[][]): void {
-  const n = columns[0].length;
-  for (const x of columns) removeLine(x);
-  const sample = columns.map((a) => columns.map((b) => dot(a, b) / n));
-  const sampleRoot = cholesky(sample);
-  const targetRoot = cholesky(target);
-  // Rows of the mix: targetRoot · sampleRoot⁻¹.
-  const inverse = inverseLower(sampleRoot);
-  const size = columns.length;
+/** Bands of lines [from, to): the first holds enough lines for six series, the others widen by a half. */
+function bands(n: number): [number, number][] {
+  const last = n / 2;
+  const edges = [1];
+  for (let next = 9; next < last; next = Math.ceil(next * 1.5)) edges.push(next);
+  // A short last band is joined to the one before.
+  if (edges.length > 1 && last - edges[edges.length - 1] < 8) edges.pop();
+  edges.push(last);
+  return edges.slice(1).map((to, i) => [edges[i], to]);
+}
+
+/** Mixes the lines of one band so that their covariances are the wanted ones and w does not go with a straight line. */
+function matchBand(
+  re: Float64Array[],
+  im: Float64Array[],
+  from: number,
+  to: number,
+  n: number,
+  wanted: number[][],
+): void {
+  // A rising line 0, 1, …, n − 1 has the transform −n/2 + i (n/2) cot(πk/n): take its part of the band out of w.
+  let along = 0;
+  let size = 0;
+  for (let k = from; k < to; k++) {
+    const cot = 1 / Math.tan((Math.PI * k) / n);
+    along += -re[0][k] + im[0][k] * cot;
+    size += 1 + cot * cot;
+  }
+  for (let k = from; k < to; k++) {
+    const cot = 1 / Math.tan((Math.PI * k) / n);
+    re[0][k] += along / size;
+    im[0][k] -= (along / size) * cot;
+  }
+  const sample = re.map((_, i) =>
+    re.map((__, j) => {
+      let sum = 0;
+      for (let k = from; k < to; k++) sum += re[i][k] * re[j][k] + im[i][k] * im[j][k];
+      return 2 * sum;
+    }),
+  );
+  const targetRoot = cholesky(wanted);
+  const inverse = inverseLower(cholesky(sample));
   const mix = targetRoot.map((row) =>
     row.map((_, column) => {
       let sum = 0;
-      for (let k = 0; k < size; k++) sum += row[k] * inverse[k][column];
+      for (let k = 0; k < row.length; k++) sum += row[k] * inverse[k][column];
       return sum;
     }),
   );
-  const values = new Float64Array(size);
-  for (let i = 0; i < n; i++) {
-    for (let s = 0; s < size; s++) values[s] = columns[s][i];
-    for (let s = 0; s < size; s++) {
-      let sum = 0;
-      for (let k = 0; k <= s; k++) sum += mix[s][k] * values[k];
-      columns[s][i] = sum;
+  for (let k = from; k < to; k++) {
+    // Last row first: each reads rows above it that are still unmixed.
+    for (let s = re.length - 1; s >= 0; s--) {
+      let sumRe = 0;
+      let sumIm = 0;
+      for (let r = 0; r <= s; r++) {
+        sumRe += mix[s][r] * re[r][k];
+        sumIm += mix[s][r] * im[r][k];
+      }
+      re[s][k] = sumRe;
+      im[s][k] = sumIm;
     }
   }
-}
-
-function removeLine(x: Float64Array): void {
-  const n = x.length;
-  const middle = (n - 1) / 2;
-  let mean = 0;
-  let slope = 0;
-  for (let i = 0; i < n; i++) {
-    mean += x[i];
-    slope += x[i] * (i - middle);
-  }
-  mean /= n;
-  slope /= (n * (n * n - 1)) / 12;
-  for (let i = 0; i < n; i++) x[i] -= mean + slope * (i - middle);
-}
-
-function dot(a: Float64Array, b: Float64Array): number {
-  let sum = 0;
-  for (let i = 0; i < a.length; i++) sum += a[i] * b[i];
-  return sum;
 }
 
 /** Lower triangular root of a symmetric positive definite matrix. */
