@@ -1,4 +1,4 @@
-import { nextSmoothLength, sharedFft } from './fft';
+import { nextSmoothLength, powerOfTwoNear, sharedFft } from './fft';
 
 /**
  * Covariances of two series at many lags, exact over the samples that are valid at each lag.
@@ -32,9 +32,11 @@ export interface LaggedCovariances {
   pairs: Float64Array;
 }
 
-/** Series with its mean taken off and gaps as zeros, as the sums need it. */
+/** Series with its mean taken off, brought to a size near 1, and gaps as zeros, as the sums need it. */
 interface Centred {
+  /** (x − mean) / size */
   values: Float64Array;
+  size: number;
   /** Positions of missing samples. */
   missing: Int32Array;
 }
@@ -53,12 +55,21 @@ function centre(series: Float64Array): Centred {
   const mean = count > 0 ? sum / count : 0;
   const values = new Float64Array(n);
   const missing = new Int32Array(n - count);
+  let sumOfSquares = 0;
   for (let i = 0, m = 0; i < n; i++) {
     const value = series[i];
-    if (value === value) values[i] = value - mean;
-    else missing[m++] = i;
+    if (value === value) {
+      const deviation = value - mean;
+      values[i] = deviation;
+      sumOfSquares += deviation * deviation;
+    } else {
+      missing[m++] = i;
+    }
   }
-  return { values, missing };
+  const size = powerOfTwoNear(Math.sqrt(sumOfSquares / count));
+  const scale = 1 / size;
+  for (let i = 0; i < n; i++) values[i] *= scale;
+  return { values, size, missing };
 }
 
 /**
@@ -307,6 +318,7 @@ export function laggedCovariances(
 
   const first = centre(x);
   const second = centre(y);
+  const size = first.size * second.size;
   const fewGaps = (first.missing.length + second.missing.length) * lags <= gapVisitsLimit;
   let products: Float64Array;
   let sums: PairSums;
@@ -323,7 +335,8 @@ export function laggedCovariances(
   }
   for (let at = 0; at < lags; at++) {
     const pairs = sums.pairs[at];
-    if (pairs > 0) covariances[at] = (products[at] - (sums.sumX[at] * sums.sumY[at]) / pairs) / pairs;
+    if (pairs > 0)
+      covariances[at] = ((products[at] - (sums.sumX[at] * sums.sumY[at]) / pairs) / pairs) * size;
   }
   return { maxLag, covariances, pairs: sums.pairs };
 }
@@ -374,12 +387,13 @@ function biasedOfTwo(
   const fft = sharedFft(length);
   const [re, im, crossRe, crossIm] = scratch.zeroed(length);
   const results: BiasedCovariances[] = [];
+  const crossSizes: number[] = [];
   series.forEach(({ x, y }, index) => {
     if (index > 0) {
       re.fill(0);
       im.fill(0);
     }
-    const pairs = fillCentredPairs(x, y, re, im);
+    const { pairs, sizeX, sizeY } = fillCentredPairs(x, y, re, im);
     fft.forward(re, im);
     // Z = X + iY. Auto spectra of both, packed as |X|² + i|Y|², replace Z; conj(X)·Y is added to the crosses, turned by i the second time.
     for (let k = 0; k <= length >> 1; k++) {
@@ -418,27 +432,28 @@ function biasedOfTwo(
     const xx = new Float64Array(reach + 1);
     const yy = new Float64Array(reach + 1);
     for (let p = 0; p <= reach; p++) {
-      xx[p] = re[p] * scale;
-      yy[p] = im[p] * scale;
+      xx[p] = re[p] * scale * sizeX * sizeX;
+      yy[p] = im[p] * scale * sizeY * sizeY;
     }
     results.push({ pairs, xx, yy, xy: new Float64Array(2 * reach + 1) });
+    crossSizes.push(sizeX * sizeY);
   });
   fft.inverse(crossRe, crossIm);
   results.forEach((result, index) => {
     const from = index === 0 ? crossRe : crossIm;
-    const scale = result.pairs > 0 ? 1 / result.pairs : Number.NaN;
+    const scale = result.pairs > 0 ? crossSizes[index] / result.pairs : Number.NaN;
     for (let p = -reach; p <= reach; p++) result.xy[p + reach] = from[p < 0 ? length + p : p] * scale;
   });
   return results;
 }
 
-/** Writes x' and y' with zeros at missing pairs; returns the number of valid pairs. */
+/** Writes x' and y', each over a size near its root mean square, with zeros at missing pairs. */
 function fillCentredPairs(
   x: Float64Array,
   y: Float64Array,
   intoX: Float64Array,
   intoY: Float64Array,
-): number {
+): { pairs: number; sizeX: number; sizeY: number } {
   const n = x.length;
   let pairs = 0;
   let sumX = 0;
@@ -460,15 +475,29 @@ function fillCentredPairs(
     sumY += b - offsetY;
     pairs++;
   }
-  if (pairs === 0) return 0;
+  if (pairs === 0) return { pairs, sizeX: 1, sizeY: 1 };
   const meanX = offsetX + sumX / pairs;
   const meanY = offsetY + sumY / pairs;
+  let squaresX = 0;
+  let squaresY = 0;
   for (let i = 0; i < n; i++) {
     const a = x[i];
     const b = y[i];
     if (a !== a || b !== b) continue;
-    intoX[i] = a - meanX;
-    intoY[i] = b - meanY;
+    const dx = a - meanX;
+    const dy = b - meanY;
+    squaresX += dx * dx;
+    squaresY += dy * dy;
+    intoX[i] = dx;
+    intoY[i] = dy;
   }
-  return pairs;
+  const sizeX = powerOfTwoNear(Math.sqrt(squaresX / pairs));
+  const sizeY = powerOfTwoNear(Math.sqrt(squaresY / pairs));
+  const scaleX = 1 / sizeX;
+  const scaleY = 1 / sizeY;
+  for (let i = 0; i < n; i++) {
+    intoX[i] *= scaleX;
+    intoY[i] *= scaleY;
+  }
+  return { pairs, sizeX, sizeY };
 }

@@ -425,10 +425,22 @@ export interface HalfSpectrum {
 }
 
 /**
+ * Power of two near a root mean square. Two series that share a transform are brought to the same size with it: rounding of the larger
+ * would else drown digits of the smaller. Being a power of two it costs no digit itself.
+ *
+ * @param size root mean square of a series
+ * @returns the divisor; 1 for a series of zeros or without values
+ */
+export function powerOfTwoNear(size: number): number {
+  const power = 2 ** Math.round(Math.log2(size));
+  return power > 0 && Number.isFinite(power) ? power : 1;
+}
+
+/**
  * Spectra of two real series of the same length from one complex transform of a + i b.
  *
  * @param a real series, n values without NaN (not changed)
- * @param b real series, n values without NaN (not changed)
+ * @param b real series, n values without NaN (not changed); of about the size of a (`powerOfTwoNear`)
  * @returns half spectra of a and b, ⌊n/2⌋ + 1 values each
  */
 export function transformTwoReal(a: Float64Array, b: Float64Array): [HalfSpectrum, HalfSpectrum] {

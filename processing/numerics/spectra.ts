@@ -1,4 +1,4 @@
-import { transformTwoReal } from './fft';
+import { powerOfTwoNear, transformTwoReal } from './fft';
 import { isConstantSignal, pairMoments } from './moments';
 
 /** Spectra, cospectra and ogives of gap-free series. */
@@ -95,8 +95,10 @@ export function crossSpectrum(
   const covariance = about.cxy / n;
 
   const weights = windowWeights(window, n);
-  const a = x.map((value) => value - about.meanX);
-  const b = y.map((value) => value - about.meanY);
+  const sizeX = powerOfTwoNear(Math.sqrt(varianceX));
+  const sizeY = powerOfTwoNear(Math.sqrt(varianceY));
+  const a = x.map((value) => (value - about.meanX) / sizeX);
+  const b = y.map((value) => (value - about.meanY) / sizeY);
   let meanSquare = 1;
   if (weights) {
     let sum = 0;
@@ -116,7 +118,7 @@ export function crossSpectrum(
   const lineWidthHz = sampleRateHz / n;
   for (let k = 0; k < lines; k++) {
     const sides = k === 0 || 2 * k === n ? 1 : 2;
-    const scale = sides / (n * sampleRateHz * meanSquare);
+    const scale = (sides * sizeX * sizeY) / (n * sampleRateHz * meanSquare);
     frequenciesHz[k] = k * lineWidthHz;
     cospectrum[k] = scale * (first.re[k] * second.re[k] + first.im[k] * second.im[k]);
     quadrature[k] = scale * (first.re[k] * second.im[k] - first.im[k] * second.re[k]);

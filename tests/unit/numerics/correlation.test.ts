@@ -76,6 +76,20 @@ describe('laggedCovariances', () => {
     );
   });
 
+  it('keeps the digits of a series that is a thousand million times smaller than the other', () => {
+    for (const share of [0, 0.3]) {
+      const x = series(4000, 13, share);
+      const y = series(4000, 14, share);
+      const tiny = y.map((value) => value * 1e-9);
+      const { covariances } = laggedCovariances(x, tiny, 150);
+      for (const lag of [-150, -3, 0, 77]) {
+        expect(Math.abs(covariances[lag + 150] / definition(x, tiny, lag).covariance - 1)).toBeLessThan(
+          1e-10,
+        );
+      }
+    }
+  });
+
   it('is linear in either series', () => {
     const x = series(2000, 9, 0);
     const y = series(2000, 10, 0);
@@ -145,6 +159,17 @@ describe('biasedCovariances', () => {
     );
     expect(found).toHaveLength(3);
     others.forEach((y, index) => expectBiased(w, y, 90, found[index]));
+  });
+
+  it('gives the same for a pair alone and beside one a thousand million times larger', () => {
+    const [x, y] = [series(500, 24, 0), series(500, 25, 0).map((value) => value * 1e-9)];
+    const large = { x: series(500, 26, 0).map((value) => value * 1e3), y: series(500, 27, 0) };
+    const [alone] = biasedCovariances([{ x, y }], 40);
+    const [, beside] = biasedCovariances([large, { x, y }], 40);
+    for (let at = 0; at < alone.xy.length; at++)
+      expect(Math.abs(beside.xy[at] - alone.xy[at]) * 1e9).toBeLessThan(1e-13);
+    for (let p = 0; p < alone.yy.length; p++)
+      expect(Math.abs(beside.yy[p] - alone.yy[p]) * 1e18).toBeLessThan(1e-13);
   });
 
   it('cuts the lags to the length of a short record', () => {
