@@ -24,22 +24,25 @@ export interface Line {
 export function leastSquaresLine(values: Float64Array): Line {
   const length = values.length;
   const middle = (length - 1) / 2;
-  let n = 0;
-  let origin = NaN;
-  let sumX = 0;
+  let first = 0;
+  while (first < length && values[first] !== values[first]) first++;
+  const origin = values[first];
+  // Centred times of a complete record add up to 0, their squares to N (N² − 1)/12; the missing ones are taken off.
+  let n = length;
   let sumT = 0;
-  let sumTT = 0;
+  let sumTT = (length * (length * length - 1)) / 12;
+  let sumX = 0;
   let sumTX = 0;
   for (let i = 0; i < length; i++) {
-    const value = values[i];
-    if (value !== value) continue;
-    if (n === 0) origin = value;
-    const x = value - origin;
+    const x = values[i] - origin;
     const t = i - middle;
-    n++;
+    if (x !== x) {
+      n--;
+      sumT -= t;
+      sumTT -= t * t;
+      continue;
+    }
     sumX += x;
-    sumT += t;
-    sumTT += t * t;
     sumTX += t * x;
   }
   if (n === 0) return { n, slope: NaN, centre: NaN, valueAtCentre: NaN };

@@ -401,6 +401,6 @@ function noteLoss(
     statistic: { label: `missing samples, ${label}`, value: missing * 100, unit: '%' },
     limits: { softHigh: limits.softMissingPercent, hardHigh: limits.hardMissingPercent },
     finding: `${capitalised(label)} missing ${formatPercent(missing)}`,
-    sentence: `Of the ${label} samples ${lossesInWords(state, key)}. ${consequence}`,
+    sentence: `${capitalised(label)} samples lost: ${lossesInWords(state, key)}. ${consequence}`,
   });
 }

@@ -11,6 +11,7 @@ import {
   formatNumber,
   formatPercent,
   gradeAbove,
+  listOf,
 } from './ledger';
 
 const version = 1;
@@ -253,6 +254,9 @@ export const diagnosticsStep: Step<RecipeSettings['diagnostics']> = (state, sett
     const cause = mostlyWindow
       ? `Mean signal strength was ${formatNumber(meanSignal, 1)} %, the limit is ${formatNumber(limit, 1)} %${rule === 'relative' && context.signalStrengthReference !== null ? ` (clean windows here: ${formatNumber(context.signalStrengthReference, 1)} %)` : ''}. Dirt, dew or rain on the windows: clean them at the next visit.`
       : 'Rain, dew or a fault of the instrument: look up its status codes.';
+    const seen: string[] = [];
+    if (analyserBad > 0) seen.push(`${formatNumber(analyserBad)} have a bad analyser status`);
+    if (lowSignal > 0) seen.push(`${formatNumber(lowSignal)} have too little signal`);
     addReason(state, {
       key: mostlyWindow ? 'diagnostics.signalStrength' : 'diagnostics.analyser',
       step: 'diagnostics',
@@ -268,7 +272,7 @@ export const diagnosticsStep: Step<RecipeSettings['diagnostics']> = (state, sett
       finding: mostlyWindow
         ? `Signal strength low ${formatPercent(rejected)}`
         : `Analyser status bad ${formatPercent(rejected)}`,
-      sentence: `${formatNumber(analyserBad)} scans have a bad analyser status and ${formatNumber(lowSignal)} more too little signal, of ${formatNumber(recorded)}; they are left out of CO2 and H2O. ${cause}`,
+      sentence: `Of ${formatNumber(recorded)} scans ${listOf(seen)}; they are left out of CO2 and H2O. ${cause}`,
     });
   }
 

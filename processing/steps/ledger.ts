@@ -179,6 +179,7 @@ export function countOf(count: number, singular: string, plural = `${singular}s`
 /** A length of time as it stands in a sentence: "0.35 s", "12 s", "4 min 3 s". */
 export function formatDuration(seconds: number): string {
   if (!Number.isFinite(seconds)) return 'no value';
+  if (seconds === 0) return '0 s';
   if (seconds < 10) return `${formatNumber(seconds, seconds < 1 ? 2 : 1)} s`;
   const whole = Math.round(seconds);
   if (whole < 60) return `${whole} s`;
@@ -187,9 +188,9 @@ export function formatDuration(seconds: number): string {
   return rest === 0 ? `${formatNumber(minutes)} min` : `${formatNumber(minutes)} min ${rest} s`;
 }
 
-/** Where in a period: "at 12 min 4 s". */
+/** Where in a period something begins: "from 12 min 4 s on". */
 export function formatPlace(secondsFromStart: number): string {
-  return `at ${formatDuration(secondsFromStart)} after its start`;
+  return `from ${formatDuration(secondsFromStart)} on`;
 }
 
 /** "u, v and w". */

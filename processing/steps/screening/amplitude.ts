@@ -65,31 +65,26 @@ export function amplitudeTests(
   let judged = 0;
   let same = 0;
 
+  // Where windows overlap by whole steps, each step is summed once and windows are put together from steps.
+  const whole = windowPoints % stepPoints === 0;
+  const parts: Spread[] = [];
+  for (let start = 0; whole && start + stepPoints <= values.length; start += stepPoints) {
+    parts.push(spread(values, start, start + stepPoints));
+  }
+
   for (let start = 0; start + windowPoints <= values.length; start += stepPoints) {
     const end = start + windowPoints;
-    let n = 0;
-    let sum = 0;
-    let min = Infinity;
-    let max = -Infinity;
-    for (let i = start; i < end; i++) {
-      const value = values[i];
-      if (value !== value) continue;
-      n++;
-      sum += value;
-      if (value < min) min = value;
-      if (value > max) max = value;
+    let part = whole ? parts[start / stepPoints] : spread(values, start, end);
+    for (let k = 1; whole && k < windowPoints / stepPoints; k++) {
+      part = joined(part, parts[start / stepPoints + k]);
     }
+    const { n, mean, min, max } = part;
     if (n < minimumValidShare * windowPoints || n === 0) continue;
     found.windows++;
     judged += n;
-    const mean = sum / n;
-    let squares = 0;
-    for (let i = start; i < end; i++) {
-      const d = values[i] - mean;
-      if (d === d) squares += d * d;
-    }
+    const variance = part.squares / n;
     const range = max - min;
-    if (!(range > 0) || isConstantSignal(squares / n, mean)) {
+    if (!(range > 0) || isConstantSignal(variance, mean)) {
       same += n - 1;
       if ((bins - 1) / bins > mostEmpty) {
         mostEmpty = (bins - 1) / bins;
@@ -101,7 +96,7 @@ export function amplitudeTests(
       }
       continue;
     }
-    const span = spanSigma * Math.sqrt(squares / n);
+    const span = spanSigma * Math.sqrt(variance);
     const isWide = span < range;
     const low = isWide ? mean - span / 2 : min;
     const width = (isWide ? span : range) / bins;
@@ -180,4 +175,50 @@ export function amplitudeTests(
     found.sameBinShare = same / judged;
   }
   return found;
+}
+
+/** Mean, squared deviations and extremes of a stretch of samples. */
+interface Spread {
+  n: number;
+  mean: number;
+  /** Σ(x − mean)² */
+  squares: number;
+  min: number;
+  max: number;
+}
+
+function spread(values: Float64Array, from: number, to: number): Spread {
+  let n = 0;
+  let sum = 0;
+  let min = Infinity;
+  let max = -Infinity;
+  for (let i = from; i < to; i++) {
+    const value = values[i];
+    if (value !== value) continue;
+    n++;
+    sum += value;
+    if (value < min) min = value;
+    if (value > max) max = value;
+  }
+  const mean = n === 0 ? NaN : sum / n;
+  let squares = 0;
+  for (let i = from; i < to; i++) {
+    const d = values[i] - mean;
+    if (d === d) squares += d * d;
+  }
+  return { n, mean, squares, min, max };
+}
+
+function joined(a: Spread, b: Spread): Spread {
+  if (a.n === 0) return b;
+  if (b.n === 0) return a;
+  const n = a.n + b.n;
+  const difference = b.mean - a.mean;
+  return {
+    n,
+    mean: a.mean + (difference * b.n) / n,
+    squares: a.squares + b.squares + (difference * difference * a.n * b.n) / n,
+    min: Math.min(a.min, b.min),
+    max: Math.max(a.max, b.max),
+  };
 }

@@ -255,14 +255,20 @@ function noteAmplitude(
 
   const empty = found.emptyShare * 100;
   const emptyAtS = found.emptyAt / sampleRateHz;
+  const { bins } = settings.amplitudeResolution;
+  const isFrozen = found.emptyShare >= (bins - 1) / bins;
   note(
     flagAbove(empty, settings.amplitudeResolution.emptyPercent),
     'amplitudeResolution',
     key,
     { label: `empty histogram bins, ${label}`, value: empty, unit: '%' },
     upperLimits(settings.amplitudeResolution.emptyPercent),
-    `${name} too coarse, ${formatNumber(empty)} %`,
-    `In the ${formatDuration(windowS)} ${formatPlace(emptyAtS)}, ${formatNumber(empty)} % of the histogram bins of ${label} are empty: the signal moves in steps, like a comb, and small fluctuations are lost.`,
+    isFrozen
+      ? `${name} frozen, ${formatNumber(empty)} % empty`
+      : `${name} too coarse, ${formatNumber(empty)} %`,
+    isFrozen
+      ? `In the ${formatDuration(windowS)} ${formatPlace(emptyAtS)} all samples of ${label} are the same. Moving air does not stand still: the signal froze.`
+      : `In the ${formatDuration(windowS)} ${formatPlace(emptyAtS)}, ${formatNumber(empty)} % of the histogram bins of ${label} are empty: the signal moves in steps, like a comb, and small fluctuations are lost.`,
     { atS: emptyAtS },
   );
 

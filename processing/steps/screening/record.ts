@@ -30,32 +30,9 @@ export interface RecordStatistics {
  */
 export function recordStatistics(values: Float64Array): RecordStatistics {
   const line = leastSquaresLine(values);
+  const { n, centre } = line;
   const mean = line.valueAtCentre;
-  const slope = line.n < 2 ? 0 : line.slope;
-  let min = Infinity;
-  let max = -Infinity;
-  let d1 = 0;
-  let d2 = 0;
-  let r1 = 0;
-  let r2 = 0;
-  let r3 = 0;
-  let r4 = 0;
-  for (let i = 0; i < values.length; i++) {
-    const value = values[i];
-    if (value !== value) continue;
-    if (value < min) min = value;
-    if (value > max) max = value;
-    const d = value - mean;
-    d1 += d;
-    d2 += d * d;
-    const r = d - slope * (i - line.centre);
-    const square = r * r;
-    r1 += r;
-    r2 += square;
-    r3 += square * r;
-    r4 += square * square;
-  }
-  const { n } = line;
+  const slope = n < 2 ? 0 : line.slope;
   if (n === 0) {
     return {
       n,
@@ -69,14 +46,35 @@ export function recordStatistics(values: Float64Array): RecordStatistics {
       kurtosis: NaN,
     };
   }
-  const shift = d1 / n;
-  const variance = Math.max(0, d2 / n - shift * shift);
+  let min = Infinity;
+  let max = -Infinity;
+  for (let i = 0; i < values.length; i++) {
+    const value = values[i];
+    if (value < min) min = value;
+    if (value > max) max = value;
+  }
+  let d2 = 0;
+  let r2 = 0;
+  let r3 = 0;
+  let r4 = 0;
+  let time = -centre;
+  for (let i = 0; i < values.length; i++) {
+    const d = values[i] - mean;
+    // Residuals of a least-squares line have the mean 0.
+    const r = d - slope * time;
+    time += 1;
+    if (r !== r) continue;
+    const square = r * r;
+    d2 += d * d;
+    r2 += square;
+    r3 += square * r;
+    r4 += square * square;
+  }
+  const variance = d2 / n;
   const isConstant = isConstantSignal(variance, mean);
-  const c = r1 / n;
-  const raw2 = r2 / n;
-  const m2 = Math.max(0, raw2 - c * c);
-  const m3 = r3 / n - 3 * c * raw2 + 2 * c * c * c;
-  const m4 = r4 / n - (4 * c * r3) / n + 6 * c * c * raw2 - 3 * c * c * c * c;
+  const m2 = r2 / n;
+  const m3 = r3 / n;
+  const m4 = r4 / n;
   const nothingLeft = isConstantSignal(m2, mean);
   return {
     n,
