@@ -2,18 +2,9 @@ import { channelUnits, requiredChannels } from '../schemas/layout';
 import type { ChannelKey, Layout, LayoutColumn, TimeSource } from '../schemas/layout';
 import { readName, readTimeName, readUnit, unitForChannel } from './column-names';
 import type { NameReading, TimeNameReading } from './column-names';
-import {
-  fieldsOf,
-  holdsPatternTokens,
-  linesOf,
-  numberOf,
-  previewLayout,
-  readClockS,
-  readIso,
-  readPattern,
-  uncomment,
-} from './preview';
+import { fieldsOf, linesOf, numberOf, previewLayout, uncomment } from './preview';
 import type { Preview } from './preview';
+import { compileTimePattern, findTimePattern, readIso, readTimePattern } from './time-pattern';
 
 /**
  * A proposal of the layout of a raw file, from its first lines, its name and what the set-up says. Nothing is decided in silence:
@@ -316,9 +307,8 @@ interface DateFound {
   text: string;
   hasTime: boolean;
   isUtc: boolean;
-  year: number;
-  month: number | null;
-  day: number | null;
+  month: number;
+  day: number;
   /** Day and month could be swapped. */
   isAmbiguous: boolean;
 }
@@ -356,49 +346,50 @@ const dateShapes: readonly {
   },
 ];
 
-/** Dates in a text, each with the pattern that finds it again in the whole text. */
-function datesIn(text: string, label: 'file-name' | 'header'): DateFound[] {
-  const found: DateFound[] = [];
+/** A text that is nothing but a pattern, as ms; NaN when it does not follow it or names no date. */
+function patternMs(text: string, pattern: string): number {
+  return readTimePattern(compileTimePattern(pattern, 'whole'), text)?.ms ?? Number.NaN;
+}
+
+const patternTokens = /YYYY|YY|MM|DDD|DD|hh|mm|ss|\*/;
+
+/** The first date in a text, with the pattern that finds it again; `keepLabel` keeps the words before it, to tell it from others. */
+function datesIn(text: string, keepLabel: boolean): DateFound[] {
   for (const { expression, format, swaps } of dateShapes) {
     const match = new RegExp(expression.source).exec(text);
     if (!match) continue;
+    const written = match[0].replace(/Z$/, '');
     let core = format(match);
-    const parts = readPattern(match[0].replace(/Z$/, ''), core);
+    let foundMs = patternMs(written, core);
     let isAmbiguous = false;
-    let chosen = parts;
     if (swaps) {
       const swapped = core.replace('DD', '\u0000').replace('MM', 'DD').replace('\u0000', 'MM');
-      const other = readPattern(match[0], swapped);
-      if (!parts && other) {
+      const otherMs = patternMs(written, swapped);
+      if (Number.isNaN(foundMs)) {
         core = swapped;
-        chosen = other;
-      } else isAmbiguous = Boolean(parts && other && parts.day !== other.day && match[2] !== '.');
+        foundMs = otherMs;
+      } else isAmbiguous = !Number.isNaN(otherMs) && otherMs !== foundMs && match[2] !== '.';
     }
-    if (!chosen || chosen.year === undefined) continue;
-    const before = text.slice(0, match.index);
-    const mark = /[^A-Za-z0-9*]+$/.exec(before)?.[0] ?? '';
-    const lead =
-      label === 'header' && before !== '' && !holdsPatternTokens(before)
-        ? before
-        : before === ''
-          ? ''
-          : `*${holdsPatternTokens(mark) ? '' : mark}`;
-    const after = text.slice(match.index + match[0].length);
-    const pattern = `${lead}${core}${after === '' && !match[0].endsWith('Z') ? '' : '*'}`;
-    if (pattern.length > 120 || !readPattern(text, pattern)) continue;
-    found.push({
-      pattern,
-      text: match[0],
-      hasTime: chosen.hour !== undefined,
-      isUtc: match[0].endsWith('Z') || /^[_ -]?(utc|gmt)\b/i.test(after),
-      year: chosen.year,
-      month: chosen.month ?? null,
-      day: chosen.day ?? null,
-      isAmbiguous,
-    });
-    break;
+    if (Number.isNaN(foundMs)) continue;
+    const label = keepLabel ? (/[^\d]*$/.exec(text.slice(0, match.index))?.[0] ?? '') : '';
+    const labelled = `${label}${core}`;
+    const isLabelUsable = label !== '' && !patternTokens.test(label) && labelled.length <= 120 && findTimePattern(labelled, [text]) === foundMs;
+    const pattern = isLabelUsable ? labelled : core;
+    if (findTimePattern(pattern, [text]) !== foundMs) continue;
+    const date = new Date(foundMs);
+    return [
+      {
+        pattern,
+        text: match[0],
+        hasTime: core.includes('hh'),
+        isUtc: match[0].endsWith('Z') || /^[_ -]?(utc|gmt)\b/i.test(text.slice(match.index + match[0].length)),
+        month: date.getUTCMonth() + 1,
+        day: date.getUTCDate(),
+        isAmbiguous,
+      },
+    ];
   }
-  return found;
+  return [];
 }
 
 // ---------------------------------------------------------------------------------------------------------------- time
@@ -442,7 +433,7 @@ function dayMonthOrder(
   const pair = pairs[0];
   if (!pair || pair.a === pair.b) return { first: 'DD', isAmbiguous: false };
   for (const date of [...context.nameDates, ...context.headerDates]) {
-    if (date.isAmbiguous || date.month === null) continue;
+    if (date.isAmbiguous) continue;
     if (date.day === pair.a && date.month === pair.b) return { first: 'DD', isAmbiguous: false };
     if (date.day === pair.b && date.month === pair.a) return { first: 'MM', isAmbiguous: false };
   }
@@ -512,8 +503,8 @@ function guessTime(context: TimeContext): TimeGuess {
   // date and time in one column
   for (const profile of profiles) {
     const example = profile.tokens.find((token) => token !== '') ?? '';
-    if (share(profile.tokens, (token) => readIso(token) !== null && token.length > 10) > 0.9) {
-      const offset = readIso(example)?.offsetMinutes ?? null;
+    if (share(profile.tokens, (token) => token.length > 10 && Number.isFinite(readIso(token)?.ms ?? Number.NaN)) > 0.9) {
+      const offset = readIso(example)?.zoneMinutes ?? null;
       const guess = done(
         { kind: 'stamp', column: profile.index, format: 'iso' },
         [profile.index],
@@ -541,7 +532,7 @@ function guessTime(context: TimeContext): TimeGuess {
       const mark = /[T _-]/.exec(example)?.[0] ?? 'T';
       const isUtc = example.endsWith('Z');
       const guess = done(
-        { kind: 'stamp', column: profile.index, format: `YYYYMMDD${mark}hhmmss${isUtc ? '*' : ''}` },
+        { kind: 'stamp', column: profile.index, format: `YYYYMMDD${mark}hhmmss${isUtc ? 'Z' : ''}` },
         [profile.index],
         'one column with date and time',
         'sure',
@@ -551,7 +542,7 @@ function guessTime(context: TimeContext): TimeGuess {
     if (
       share(
         profile.tokens,
-        (token) => /^\d{14}([.,]\d+)?$/.test(token) && readPattern(token, 'YYYYMMDDhhmmss') !== null,
+        (token) => /^\d{14}([.,]\d+)?$/.test(token) && !Number.isNaN(patternMs(token, 'YYYYMMDDhhmmss')),
       ) > 0.9
     ) {
       return done(
@@ -568,7 +559,7 @@ function guessTime(context: TimeContext): TimeGuess {
   const packedClock = profiles.find(
     (profile) =>
       (profile.timeRole === 'clock' || profile.name === null) &&
-      share(profile.tokens, (token) => /^\d{6}([.,]\d+)?$/.test(token) && !Number.isNaN(readClockS(token))) >
+      share(profile.tokens, (token) => /^([01]\d|2[0-4])[0-5]\d[0-5]\d([.,]\d+)?$/.test(token)) >
         0.9 &&
       profile.rising > 0,
   );
@@ -578,13 +569,13 @@ function guessTime(context: TimeContext): TimeGuess {
     (profile) =>
       share(
         profile.tokens,
-        (token) => /^(19|20)\d{6}$/.test(token) && readPattern(token, 'YYYYMMDD') !== null,
+        (token) => /^(19|20)\d{6}$/.test(token) && !Number.isNaN(patternMs(token, 'YYYYMMDD')),
       ) > 0.9,
   );
   if (clockColumn && (date || packedDate)) {
     const dateProfile = (date ?? packedDate)!;
     const example = dateProfile.tokens.find((token) => token !== '') ?? '';
-    const isIso = readIso(example) !== null;
+    const isIso = Number.isFinite(readIso(example)?.ms ?? Number.NaN);
     const order = dayMonthOrder(dateProfile.tokens, context);
     const format =
       packedDate && !date ? 'YYYYMMDD' : isIso ? 'iso' : (datePattern(example, order.first) ?? 'iso');
@@ -640,7 +631,7 @@ function guessTime(context: TimeContext): TimeGuess {
   if (isYear(byRole('year')) && monthColumn && hourColumn) {
     const { source } = dateSourceOf(context);
     const guess = done(
-      { kind: 'start-and-rate', start: source ?? { from: 'file-name', pattern: '*YYYYMMDD_hhmm*' } },
+      { kind: 'start-and-rate', start: source ?? { from: 'file-name', pattern: 'YYYYMMDD_hhmm' } },
       profiles
         .filter((profile) => profile.timeRole !== null && profile.timeRole !== 'counter')
         .map((profile) => profile.index),
@@ -689,7 +680,7 @@ function guessTime(context: TimeContext): TimeGuess {
       }
       return guess;
     };
-    const yearOrPlaceholder = year ?? { from: 'file-name' as const, pattern: '*YYYY*' };
+    const yearOrPlaceholder = year ?? { from: 'file-name' as const, pattern: 'YYYY' };
     if (!dayColumn.isWhole) {
       return withYear(
         done(
@@ -797,7 +788,7 @@ function guessTime(context: TimeContext): TimeGuess {
 
   // time of day, date from elsewhere
   if (clockColumn) {
-    const source = place.source ?? { from: 'file-name' as const, pattern: '*YYYYMMDD*' };
+    const source = place.source ?? { from: 'file-name' as const, pattern: 'YYYYMMDD' };
     const guess = done(
       { kind: 'time-of-day', column: clockColumn.index, date: source },
       [clockColumn.index],
@@ -829,7 +820,7 @@ function guessTime(context: TimeContext): TimeGuess {
   const start: { from: 'file-name' | 'header'; pattern: string } | null =
     place.date?.hasTime || !withTime ? place.source : { from: 'header', pattern: withTime.pattern };
   const guess = done(
-    { kind: 'start-and-rate', start: start ?? { from: 'file-name', pattern: '*YYYYMMDD_hhmm*' } },
+    { kind: 'start-and-rate', start: start ?? { from: 'file-name', pattern: 'YYYYMMDD_hhmm' } },
     counters.map((profile) => profile.index),
     start
       ? `rows carry no stamps; start from the ${start.from === 'header' ? 'header' : 'file’s name'}, then the sampling rate`
@@ -1513,8 +1504,10 @@ export function guessLayout(input: GuessInput): LayoutGuess {
   );
 
   // time
-  const nameDates = datesIn(input.fileName, 'file-name');
-  const headerDates = headerLines.flatMap((line) => datesIn(line, 'header'));
+  const nameDates = datesIn(input.fileName, false);
+  const headerDatesBare = headerLines.flatMap((line) => datesIn(line, false));
+  // one date in the header is found by its shape alone; of several, the words before it tell them apart
+  const headerDates = headerDatesBare.length > 1 ? headerLines.flatMap((line) => datesIn(line, true)) : headerDatesBare;
   const headerRate = rateFromHeader(headerLines);
   const timeGuess = guessTime({
     profiles,

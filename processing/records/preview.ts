@@ -1,5 +1,7 @@
 import Papa from 'papaparse';
 import type { ChannelKey, Layout, TimeSource } from '../schemas/layout';
+import { compileTimePattern, dayOfYearMs, findTimePattern, findYear, readClock, readIso, readTimePattern } from './time-pattern';
+import { numericSentinels, readNumber } from './token';
 
 /**
  * The first lines of a raw file read with a layout, for looking at before the whole file is read. Small and forgiving: what cannot be
@@ -34,168 +36,10 @@ function unquote(field: string): string {
 
 /** A token as number; NaN when it is none. */
 export function numberOf(token: string, decimal: '.' | ','): number {
-  if (decimal === ',' && token.includes('.')) return Number.NaN;
-  const plain = decimal === ',' ? token.replace(',', '.') : token;
-  return /^[-+]?(\d+\.?\d*|\.\d+)([eE][-+]?\d+)?$/.test(plain) ? Number(plain) : Number.NaN;
+  return token === '' ? Number.NaN : (readNumber(token, decimal, noTokens) ?? Number.NaN);
 }
 
-// ---------------------------------------------------------------------------------------------------------------- dates
-
-/** What a pattern found; parts it does not name are absent. */
-export interface DateParts {
-  year?: number;
-  month?: number;
-  day?: number;
-  dayOfYear?: number;
-  hour?: number;
-  minute?: number;
-  second?: number;
-}
-
-const partShapes = {
-  YYYY: { part: 'year', expression: '(\\d{4})' },
-  YY: { part: 'year', expression: '(\\d{2})' },
-  MM: { part: 'month', expression: '(\\d{1,2})' },
-  DDD: { part: 'dayOfYear', expression: '(\\d{1,3})' },
-  DD: { part: 'day', expression: '(\\d{1,2})' },
-  hh: { part: 'hour', expression: '(\\d{1,2})' },
-  mm: { part: 'minute', expression: '(\\d{1,2})' },
-  ss: { part: 'second', expression: '(\\d{1,2}(?:[.,]\\d+)?)' },
-} as const satisfies Record<string, { part: keyof DateParts; expression: string }>;
-type PartToken = keyof typeof partShapes;
-const partTokens = /YYYY|YY|MM|DDD|DD|hh|mm|ss|\*/g;
-
-/** True if a text would be read as part of a pattern instead of as itself. */
-export function holdsPatternTokens(text: string): boolean {
-  return new RegExp(partTokens.source).test(text);
-}
-
-/**
- * Reads a text by a pattern of the layout (YYYY YY MM DD DDD hh mm ss, `*` any run).
- *
- * Parts that touch ("YYYYMMDD") have fixed widths; parts between other characters may be shorter ("D/M/YYYY" written as DD/MM/YYYY).
- */
-export function readPattern(text: string, pattern: string): DateParts | null {
-  const order: PartToken[] = [];
-  let expression = '^';
-  let cursor = 0;
-  const pieces = [...pattern.matchAll(partTokens)];
-  pieces.forEach((piece, index) => {
-    expression += escapeExpression(pattern.slice(cursor, piece.index));
-    cursor = piece.index + piece[0].length;
-    if (piece[0] === '*') {
-      expression += '.*?';
-      return;
-    }
-    const token = piece[0] as PartToken;
-    const next = pieces[index + 1];
-    const before = pieces[index - 1];
-    const touches =
-      (next !== undefined && next.index === cursor && next[0] !== '*') ||
-      (before !== undefined && before.index + before[0].length === piece.index && before[0] !== '*');
-    const isFixed = touches || token === 'YYYY' || token === 'YY';
-    const width = token === 'YYYY' ? 4 : token === 'DDD' ? 3 : 2;
-    expression += isFixed
-      ? token === 'ss'
-        ? `(\\d{2}(?:[.,]\\d+)?)`
-        : `(\\d{${width}})`
-      : partShapes[token].expression;
-    order.push(token);
-  });
-  expression += `${escapeExpression(pattern.slice(cursor))}$`;
-  const match = new RegExp(expression).exec(text);
-  if (!match) return null;
-  const parts: DateParts = {};
-  order.forEach((token, index) => {
-    const value = Number((match[index + 1] ?? '').replace(',', '.'));
-    parts[partShapes[token].part] = token === 'YY' ? 2000 + value : value;
-  });
-  return isPossible(parts) ? parts : null;
-}
-
-function escapeExpression(text: string): string {
-  return text.replace(/[.*+?^${}()|[\]\\]/g, '\\$&');
-}
-
-function isPossible(parts: DateParts): boolean {
-  const within = (value: number | undefined, low: number, high: number): boolean =>
-    value === undefined || (value >= low && value <= high);
-  return (
-    within(parts.year, 1970, 2199) &&
-    within(parts.month, 1, 12) &&
-    within(parts.day, 1, 31) &&
-    within(parts.dayOfYear, 1, 366) &&
-    within(parts.hour, 0, 24) &&
-    within(parts.minute, 0, 59) &&
-    within(parts.second, 0, 60.999)
-  );
-}
-
-/** Wall-clock milliseconds of date parts, as if the clock were UTC; null without year and day. */
-export function wallMsOf(parts: DateParts): number | null {
-  if (parts.year === undefined) return null;
-  const timeMs =
-    ((parts.hour ?? 0) * 3600 + (parts.minute ?? 0) * 60) * 1000 +
-    Math.round((parts.second ?? 0) * 1e6) / 1e3;
-  if (parts.dayOfYear !== undefined)
-    return Date.UTC(parts.year, 0, 1) + (parts.dayOfYear - 1) * 86_400_000 + timeMs;
-  if (parts.month === undefined || parts.day === undefined) return null;
-  const midnight = Date.UTC(parts.year, parts.month - 1, parts.day);
-  // 31 June becomes 1 July in Date.UTC: no such day
-  return new Date(midnight).getUTCMonth() === parts.month - 1 ? midnight + timeMs : null;
-}
-
-const isoExpression =
-  /^(\d{4})-(\d{2})-(\d{2})(?:[T ](\d{2}):(\d{2})(?::(\d{2}(?:[.,]\d+)?))?)?\s*(Z|[+-]\d{2}:?\d{2})?$/;
-
-/** An ISO 8601 stamp; `offsetMinutes` is null where the stamp names no zone. */
-export function readIso(token: string): { wallMs: number; offsetMinutes: number | null } | null {
-  const match = isoExpression.exec(token);
-  if (!match) return null;
-  const parts: DateParts = {
-    year: Number(match[1]),
-    month: Number(match[2]),
-    day: Number(match[3]),
-    hour: Number(match[4] ?? 0),
-    minute: Number(match[5] ?? 0),
-    second: Number((match[6] ?? '0').replace(',', '.')),
-  };
-  const wallMs = isPossible(parts) ? wallMsOf(parts) : null;
-  if (wallMs === null) return null;
-  const zone = match[7];
-  if (zone === undefined) return { wallMs, offsetMinutes: null };
-  if (zone === 'Z') return { wallMs, offsetMinutes: 0 };
-  const [, sign, hours, minutes] = /^([+-])(\d{2}):?(\d{2})$/.exec(zone) ?? [];
-  return { wallMs, offsetMinutes: (sign === '-' ? -1 : 1) * (Number(hours) * 60 + Number(minutes)) };
-}
-
-/** Seconds since midnight of hh:mm[:ss[.f]] or hhmmss[.f]; NaN when it is no time of day. */
-export function readClockS(token: string): number {
-  const match =
-    /^(\d{1,2}):(\d{2})(?::(\d{2}(?:[.,]\d+)?))?$/.exec(token) ??
-    /^(\d{2})(\d{2})(\d{2}(?:[.,]\d+)?)$/.exec(token);
-  if (!match) return Number.NaN;
-  const hours = Number(match[1]);
-  const minutes = Number(match[2]);
-  const seconds = Number((match[3] ?? '0').replace(',', '.'));
-  return hours <= 24 && minutes <= 59 && seconds < 61 ? hours * 3600 + minutes * 60 + seconds : Number.NaN;
-}
-
-type PartSource = { from: 'file-name' | 'header'; pattern: string };
-
-/** Date parts from file name or header by a layout's pattern. */
-export function readPartSource(
-  source: PartSource,
-  fileName: string,
-  headerLines: readonly string[],
-): DateParts | null {
-  if (source.from === 'file-name') return readPattern(fileName, source.pattern);
-  for (const line of headerLines) {
-    const parts = readPattern(line, source.pattern);
-    if (parts) return parts;
-  }
-  return null;
-}
+const noTokens: ReadonlySet<string> = new Set();
 
 /**
  * A reader of stamps, row after row; it remembers the row before, for midnights that roll over.
@@ -208,28 +52,31 @@ export function stampReader(
   headerLines: readonly string[],
 ): (fields: readonly string[]) => number | null {
   const { time, decimal, sampleRateHz } = layout;
+  const msOrNull = (reading: { ms: number } | null): number | null => (reading === null || Number.isNaN(reading.ms) ? null : reading.ms);
+  const textReader = (format: string): ((token: string) => number | null) => {
+    if (format === 'iso') return (token) => msOrNull(readIso(token));
+    const pattern = compileTimePattern(format, 'whole');
+    return (token) => msOrNull(readTimePattern(pattern, token));
+  };
+  const textsOf = (from: 'file-name' | 'header'): readonly string[] => (from === 'file-name' ? [fileName] : headerLines);
+
   switch (time.kind) {
-    case 'stamp':
+    case 'stamp': {
+      const read = textReader(time.format);
+      return (fields) => read(fields[time.column] ?? '');
+    }
+    case 'date-and-time': {
+      const readDate = textReader(time.dateFormat);
       return (fields) => {
-        const token = fields[time.column] ?? '';
-        if (time.format !== 'iso') {
-          const parts = readPattern(token, time.format);
-          return parts ? wallMsOf(parts) : null;
-        }
-        return readIso(token)?.wallMs ?? null;
+        const dateMs = readDate(fields[time.dateColumn] ?? '');
+        const clockMs = msOrNull(readClock(fields[time.timeColumn] ?? ''));
+        return dateMs === null || clockMs === null ? null : dateMs + clockMs;
       };
-    case 'date-and-time':
-      return (fields) => {
-        const dateToken = fields[time.dateColumn] ?? '';
-        const dateMs =
-          time.dateFormat === 'iso'
-            ? (readIso(dateToken)?.wallMs ?? null)
-            : wallOrNull(readPattern(dateToken, time.dateFormat));
-        const seconds = readClockS(fields[time.timeColumn] ?? '');
-        return dateMs === null || Number.isNaN(seconds) ? null : dateMs + Math.round(seconds * 1e6) / 1e3;
-      };
-    case 'day-of-year':
-      return (fields) => dayOfYearMs(time, decimal, fields, fileName, headerLines);
+    }
+    case 'day-of-year': {
+      const fixedYear = 'column' in time.year ? Number.NaN : findYear(time.year.pattern, textsOf(time.year.from));
+      return (fields) => dayOfYearStampMs(time, decimal, fields, fixedYear);
+    }
     case 'epoch':
       return (fields) => {
         const value = numberOf(fields[time.column] ?? '', decimal);
@@ -237,23 +84,22 @@ export function stampReader(
         return time.unit === 's' ? value * 1000 : time.unit === 'ms' ? value : value / 1000;
       };
     case 'time-of-day': {
-      const date = readPartSource(time.date, fileName, headerLines);
-      let dayMs = date ? wallMsOf({ ...date, hour: 0, minute: 0, second: 0 }) : null;
-      let previousS = Number.NEGATIVE_INFINITY;
+      const foundMs = findTimePattern(time.date.pattern, textsOf(time.date.from));
+      let midnightMs = Math.floor(foundMs / dayMs) * dayMs;
+      let previousMs = Number.NaN;
       return (fields) => {
-        const seconds = readClockS(fields[time.column] ?? '');
-        if (Number.isNaN(seconds) || dayMs === null) return null;
-        if (seconds < previousS - 43_200) dayMs += 86_400_000;
-        previousS = seconds;
-        return dayMs + Math.round(seconds * 1e6) / 1e3;
+        const clockMs = msOrNull(readClock(fields[time.column] ?? ''));
+        if (clockMs === null || Number.isNaN(midnightMs)) return null;
+        if (clockMs < previousMs - dayMs / 2) midnightMs += dayMs;
+        previousMs = clockMs;
+        return midnightMs + clockMs;
       };
     }
     case 'start-and-rate': {
-      const start = readPartSource(time.start, fileName, headerLines);
-      const startMs = start ? wallMsOf(start) : null;
+      const startMs = findTimePattern(time.start.pattern, textsOf(time.start.from));
       let row = 0;
       return () => {
-        const stampMs = startMs === null ? null : startMs + (row * 1000) / sampleRateHz;
+        const stampMs = Number.isNaN(startMs) ? null : startMs + (row * 1000) / sampleRateHz;
         row += 1;
         return stampMs;
       };
@@ -261,37 +107,27 @@ export function stampReader(
   }
 }
 
-function wallOrNull(parts: DateParts | null): number | null {
-  return parts ? wallMsOf(parts) : null;
-}
+const dayMs = 86_400_000;
 
-function dayOfYearMs(
+function dayOfYearStampMs(
   time: Extract<TimeSource, { kind: 'day-of-year' }>,
   decimal: '.' | ',',
   fields: readonly string[],
-  fileName: string,
-  headerLines: readonly string[],
+  fixedYear: number,
 ): number | null {
-  const year =
-    'column' in time.year
-      ? numberOf(fields[time.year.column] ?? '', decimal)
-      : (readPartSource(time.year, fileName, headerLines)?.year ?? Number.NaN);
-  const day = numberOf(fields[time.dayColumn] ?? '', decimal);
-  if (Number.isNaN(year) || Number.isNaN(day)) return null;
+  const number = (column: number | null): number => (column === null ? 0 : numberOf(fields[column] ?? '', decimal));
+  const year = 'column' in time.year ? number(time.year.column) : fixedYear;
+  const day = number(time.dayColumn);
   const wholeDay = Math.floor(day);
-  let seconds: number;
-  if (time.timeFormat === 'fraction-of-day') {
-    seconds =
-      (time.timeColumn === null ? day - wholeDay : numberOf(fields[time.timeColumn] ?? '', decimal)) * 86_400;
-  } else if (time.timeFormat === 'clock') {
-    seconds = readClockS(fields[time.timeColumn ?? -1] ?? '');
-  } else {
-    const value = numberOf(fields[time.timeColumn ?? -1] ?? '', decimal);
-    seconds = time.timeFormat === 'hhmm' ? Math.floor(value / 100) * 3600 + (value % 100) * 60 : value;
+  let clockMs: number;
+  if (time.timeFormat === 'fraction-of-day') clockMs = (time.timeColumn === null ? day - wholeDay : number(time.timeColumn)) * dayMs;
+  else if (time.timeFormat === 'clock') clockMs = readClock(fields[time.timeColumn ?? -1] ?? '')?.ms ?? Number.NaN;
+  else {
+    const value = number(time.timeColumn);
+    clockMs = time.timeFormat === 'hhmm' ? (Math.floor(value / 100) * 60 + (value % 100)) * 60_000 : value * 1000;
   }
-  if (time.secondsColumn !== null) seconds += numberOf(fields[time.secondsColumn] ?? '', decimal);
-  if (Number.isNaN(seconds)) return null;
-  return Date.UTC(year, 0, 1) + (wholeDay - 1) * 86_400_000 + Math.round(seconds * 1e6) / 1e3;
+  const stampMs = dayOfYearMs(year, wholeDay) + clockMs + number(time.secondsColumn) * 1000;
+  return Number.isNaN(stampMs) ? null : stampMs;
 }
 
 // ---------------------------------------------------------------------------------------------------------------- preview
@@ -423,6 +259,7 @@ export function previewLayout(text: string, isCutOff: boolean, fileName: string,
       ? null
       : fieldsOf(uncomment(headerLines[row]), layout.delimiter);
   const missing = new Set(['', ...layout.missingTokens]);
+  const sentinels = new Set(numericSentinels(layout.missingTokens, layout.decimal));
   const columns = layout.columns.map((column): ColumnSummary => {
     let missingCount = 0;
     let unreadable = 0;
@@ -431,8 +268,9 @@ export function previewLayout(text: string, isCutOff: boolean, fileName: string,
       const token = row.fields[column.index] ?? '';
       if (missing.has(token)) missingCount += 1;
       else {
-        const value = numberOf(token, layout.decimal);
-        if (Number.isNaN(value)) unreadable += 1;
+        const value = readNumber(token, layout.decimal, missing);
+        if (value === null) unreadable += 1;
+        else if (Number.isNaN(value) || sentinels.has(value)) missingCount += 1;
         else numbers.push(value);
       }
     }
@@ -449,7 +287,11 @@ export function previewLayout(text: string, isCutOff: boolean, fileName: string,
     };
   });
   const stamps = rows.flatMap((row) => (row.wallMs === null ? [] : [row.wallMs]));
-  const shiftMs = (layout.time.kind === 'epoch' ? 0 : offsetOf(layout.clock)) * 60_000;
+  const ownZone =
+    layout.time.kind === 'stamp' && layout.time.format === 'iso'
+      ? (readIso(rows[0]?.fields[layout.time.column] ?? '')?.zoneMinutes ?? null)
+      : null;
+  const shiftMs = (layout.time.kind === 'epoch' ? 0 : (ownZone ?? offsetOf(layout.clock))) * 60_000;
   return {
     headerLines,
     names: headerFields(layout.nameRow),

@@ -284,7 +284,7 @@ describe('guessLayout on ordinary files', () => {
     );
     expect(found.layout.time).toEqual({
       kind: 'day-of-year',
-      year: { from: 'file-name', pattern: '*_YYYY_DDD*' },
+      year: { from: 'file-name', pattern: 'YYYY_DDD' },
       dayColumn: 0,
       timeColumn: null,
       timeFormat: 'fraction-of-day',
@@ -349,7 +349,7 @@ describe('guessLayout on ordinary files', () => {
     expect(found.layout.time).toEqual({
       kind: 'time-of-day',
       column: 0,
-      date: { from: 'file-name', pattern: '*-YYYY-MM-DD_hhmm*' },
+      date: { from: 'file-name', pattern: 'YYYY-MM-DD_hhmm' },
     });
     expect(found.preview.spacing?.isEven).toBe(true);
     expect(found.preview.lastMs! - found.preview.firstMs!).toBeCloseTo(11_900, 3);
@@ -367,7 +367,7 @@ describe('guessLayout on ordinary files', () => {
     expect(found.layout.time).toEqual({
       kind: 'time-of-day',
       column: 0,
-      date: { from: 'header', pattern: '# Date: YYYY-MM-DD' },
+      date: { from: 'header', pattern: 'YYYY-MM-DD' },
     });
     expect(found.preview.firstMs).toBe(Date.UTC(2027, 5, 22, 10, 30));
     expect(codesOf(found)).not.toContain('date-candidates');
@@ -381,7 +381,7 @@ describe('guessLayout on ordinary files', () => {
     );
     expect(found.layout.time).toEqual({
       kind: 'start-and-rate',
-      start: { from: 'file-name', pattern: '*_YYYYMMDDThhmmss*' },
+      start: { from: 'file-name', pattern: 'YYYYMMDDThhmmss' },
     });
     expect(found.layout.sampleRateHz).toBe(20);
     expect(found.knowledge.sampleRateHz.source).toBe('set-up');
@@ -406,7 +406,7 @@ describe('guessLayout on ordinary files', () => {
     expect(found.layout.clock).toEqual({ kind: 'fixed', offsetMinutes: 120 });
     expect(found.layout.time).toEqual({
       kind: 'start-and-rate',
-      start: { from: 'header', pattern: 'Start YYYY-MM-DD hh:mm:ss' },
+      start: { from: 'header', pattern: 'YYYY-MM-DD hh:mm:ss' },
     });
     expect(columnsOf(found).sonicTemperature).toEqual([3, 'm s-1']);
     expect(found.preview.firstMs).toBe(Date.UTC(2027, 5, 22, 9, 30));
@@ -721,7 +721,7 @@ describe('guessLayout on files that can be read in two ways', () => {
     expect(found.preview.spacing).toBeNull();
     expect(found.layout.time).toEqual({
       kind: 'start-and-rate',
-      start: { from: 'file-name', pattern: '*_YYYYMMDD_hhmm*' },
+      start: { from: 'file-name', pattern: 'YYYYMMDD_hhmm' },
     });
     expect(found.layout.sampleRateHz).toBe(20);
     expect(found.problems.find((problem) => problem.code === 'stamps-coarse')).toMatchObject({
@@ -855,9 +855,20 @@ describe('guessLayout on files that cannot be read safely', () => {
     });
     expect(named.layout.time).toEqual({
       kind: 'start-and-rate',
-      start: { from: 'file-name', pattern: '*_YYYYMMDD_hhmm*' },
+      start: { from: 'file-name', pattern: 'YYYYMMDD_hhmm' },
     });
     expect(columnsOf(named).windU).toEqual([6, 'm s-1']);
+  });
+
+  it('says that a time of day without colons cannot be read', () => {
+    const found = guess(
+      file(['date,time,u,v,w,ts'], (i, s) =>
+        ['20270622', clockOf(i, 10, morning, 1).replaceAll(':', ''), s.u, s.v, s.w, s.tC].join(','),
+      ),
+      'a.csv',
+    );
+    expect(found.layout.time).toEqual({ kind: 'date-and-time', dateColumn: 0, dateFormat: 'YYYYMMDD', timeColumn: 1 });
+    expect(found.problems.find((problem) => problem.code === 'stamps-unreadable')).toMatchObject({ severity: 'blocks' });
   });
 
   it('says which required quantity is missing', () => {

@@ -1,14 +1,8 @@
 import { describe, expect, it } from 'vitest';
 import { guessLayout } from '../../../processing/records/guess-layout';
 import { bestLayout, layoutFit } from '../../../processing/records/layout-fit';
-import {
-  fieldsOf,
-  readClockS,
-  readIso,
-  readPattern,
-  spacingOf,
-  wallMsOf,
-} from '../../../processing/records/preview';
+import { fieldsOf, spacingOf } from '../../../processing/records/preview';
+import { splitRow } from '../../../processing/records/token';
 
 // invented rows: 10 a second, names and stamps of an ordinary file
 const rows = Array.from(
@@ -60,50 +54,18 @@ describe('layoutFit', () => {
   });
 });
 
-describe('reading dates and fields for the preview', () => {
-  it('reads patterns with touching and with separated parts', () => {
-    // 22 June is day 173 of 2027 (31 + 28 + 31 + 30 + 31 + 22)
-    expect(readPattern('HOF_20270622_1130.csv', '*_YYYYMMDD_hhmm*')).toEqual({
-      year: 2027,
-      month: 6,
-      day: 22,
-      hour: 11,
-      minute: 30,
-    });
-    expect(readPattern('1/6/2027', 'DD/MM/YYYY')).toEqual({ year: 2027, month: 6, day: 1 });
-    expect(readPattern('270622-113005.25', 'YYMMDD-hhmmss')).toEqual({
-      year: 2027,
-      month: 6,
-      day: 22,
-      hour: 11,
-      minute: 30,
-      second: 5.25,
-    });
-    expect(wallMsOf(readPattern('x2027173', 'xYYYYDDD')!)).toBe(Date.UTC(2027, 5, 22));
-  });
-
-  it('refuses parts that no calendar has', () => {
-    expect(readPattern('20271322', 'YYYYMMDD')).toBeNull();
-    expect(wallMsOf({ year: 2027, month: 6, day: 31 })).toBeNull();
-    expect(readIso('2027-02-29T00:00')).toBeNull();
-    expect(readClockS('11:61:00')).toBeNaN();
-  });
-
-  it('keeps the zone of an ISO stamp apart from its wall clock', () => {
-    expect(readIso('2027-06-22 11:30:00.05+05:30')).toEqual({
-      wallMs: Date.UTC(2027, 5, 22, 11, 30, 0, 50),
-      offsetMinutes: 330,
-    });
-    expect(readIso('2027-06-22T11:30:00')).toEqual({
-      wallMs: Date.UTC(2027, 5, 22, 11, 30),
-      offsetMinutes: null,
-    });
-  });
-
+describe('rows of the preview', () => {
   it('splits quoted fields, runs of blanks, and empty fields', () => {
     expect(fieldsOf('"a, b",2,,"3"', 'comma')).toEqual(['a, b', '2', '', '3']);
     expect(fieldsOf('  1\t 2   3 ', 'blanks')).toEqual(['1', '2', '3']);
     expect(fieldsOf('1;;3', 'semicolon')).toEqual(['1', '', '3']);
+  });
+
+  it('splits rows as the reader of the whole file does', () => {
+    for (const line of ['"a, b",2,,"3"', ' 1 , 2 ,3', '"2027-06-22 11:30:00.05",918273,"NAN",-1.2']) {
+      expect(fieldsOf(line, 'comma')).toEqual(splitRow(line, 'comma', true));
+    }
+    expect(fieldsOf('  1\t 2   3 ', 'blanks')).toEqual(splitRow('  1\t 2   3 ', 'blanks', true));
   });
 
   it('tells even, jumping and shared stamps apart', () => {
