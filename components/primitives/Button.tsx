@@ -53,7 +53,7 @@ export function Button(props: ButtonProps) {
           alignItems: 'center',
           justifyContent: 'center',
           gap: 8,
-          minHeight: isWideLayout ? frame.pointerTarget : frame.phoneTarget,
+          minHeight: isWideLayout && !props.wide ? frame.pointerTarget : frame.phoneTarget,
           paddingHorizontal: kind === 'quiet' ? 8 : 16,
           borderRadius: radius,
           borderWidth: 1,

@@ -191,7 +191,7 @@ function problemOf(status: number): { title: string; next: string } {
   }
   return {
     title: 'This e-mail address and password do not belong together.',
-    next: 'Check both and try again; your lead can send you a new invitation.',
+    next: 'Check both and try again; the lead of your group can help.',
   };
 }
 

@@ -70,6 +70,7 @@ export function AccountMenu({ groupSlug, isGuest = false }: AccountMenuProps) {
             alignItems: 'center',
             justifyContent: 'center',
           },
+          !wide && { marginRight: -8 },
           webStyle({ cursor: 'pointer' }),
         ]}
       >

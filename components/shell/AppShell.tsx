@@ -17,6 +17,7 @@ import { frame, radius, space, useTheme, useWide, webStyle } from '../tokens';
 import { AccountMenu } from './AccountMenu';
 import { groupPath, placesOf } from './places';
 import type { Place } from './places';
+import { cameByHistory } from './came-by-history';
 import { useOnline } from './useOnline';
 import { Mark, Wordmark } from './Wordmark';
 
@@ -72,6 +73,11 @@ export function AppShell(props: AppShellProps) {
   const pathname = usePathname();
   const me = useMe({ enabled: !isGuest });
   const mainRef = useRef<View>(null);
+
+  // pages scroll with the document: a new page starts at its top, an old one comes back where it was left
+  useEffect(() => {
+    if (!cameByHistory()) window.scrollTo(0, 0);
+  }, []);
 
   useEffect(() => {
     const parts = [props.title, props.stationName].filter((part) => part !== undefined && part !== '');
