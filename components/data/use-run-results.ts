@@ -1,5 +1,6 @@
 import { keepPreviousData, useQuery } from '@tanstack/react-query';
-import { listSchemas, periodDetailSchema, seriesSchema, spineSchema } from '../../server/contract/api';
+import { z } from 'zod';
+import { periodDetailSchema, periodRowSchema, seriesSchema, spineSchema } from '../../server/contract/api';
 import { api } from './api-client';
 
 /** Results of runs: columns for plotting, rows for tables, one period in full, the spine. */
@@ -46,7 +47,7 @@ export function usePeriods(group: string, runId: string | null, span: TimeSpan |
       api(`/groups/${group}/runs/${runId}/periods`, {
         signal,
         query: { fromMs: span?.fromMs, toMs: span?.toMs },
-        parse: listSchemas.periods.parse,
+        parse: (value) => z.array(periodRowSchema).parse(value),
       }),
   });
 }

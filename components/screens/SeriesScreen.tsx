@@ -184,7 +184,7 @@ function RunSeries({ group, station, run, runs, summary, shell }: RunSeriesProps
   const settledIndex = useDeferredValue(index);
   const selectedStart = settledIndex >= 0 ? (starts[settledIndex] ?? Number.NaN) : Number.NaN;
   const detailQuery = usePeriod(group, run.id, selectedStart);
-  const rows = periodsQuery.data?.periods ?? [];
+  const rows = periodsQuery.data ?? [];
   const row = rows.find((one) => one.startMs === selectedStart) ?? null;
 
   const nights = useMemo(

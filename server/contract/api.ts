@@ -380,27 +380,3 @@ export const eventSchema = z.discriminatedUnion('type', [
   z.object({ type: z.literal('resync') }),
 ]);
 export type GroupEvent = z.infer<typeof eventSchema>;
-
-// ------------------------------------------------------------------------------------------------------------ lists
-
-export const listSchemas = {
-  members: z.object({ members: z.array(memberSchema) }),
-  stations: z.object({ stations: z.array(stationSummarySchema) }),
-  setUps: z.object({ setUps: z.array(setUpRevisionSchema) }),
-  layouts: z.object({ layouts: z.array(layoutRevisionSchema) }),
-  rawFiles: z.object({ rawFiles: z.array(rawFileSchema) }),
-  recipes: z.object({ recipes: z.array(recipeRecordSchema) }),
-  runs: z.object({ runs: z.array(runSchema) }),
-  periods: z.object({ periods: z.array(periodRowSchema) }),
-  jobs: z.object({
-    jobs: z.array(
-      z.object({
-        id: z.string(),
-        kind: z.enum(['read-raw-file', 'compute-run']),
-        state: z.enum(['waiting', 'working']),
-        label: z.string(),
-        share: z.number().nullable(),
-      }),
-    ),
-  }),
-} as const;
