@@ -61,7 +61,7 @@ export function AccountMenu({ groupSlug, isGuest = false }: AccountMenuProps) {
       <Pressable
         role="button"
         aria-haspopup="dialog"
-        aria-label={user ? `Account of ${user.name}` : 'Account and display'}
+        aria-label={user ? `${initialsOf(user.name)}, account of ${user.name}` : '?, account and display'}
         onPress={() => setIsOpen(true)}
         style={[
           {
