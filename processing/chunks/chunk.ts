@@ -47,9 +47,13 @@ export interface ChunkIntake {
 export interface IngestReport {
   schema: 'gustbook/ingest/1';
   contentHash: string;
+  /** Bytes of the unpacked content; 0 when not counted. */
+  contentBytes: number;
+  /** Content hashes of other raw files that this one begins with, byte for byte: it supersedes them. */
+  beginsWith: string[];
   layoutHash: string;
   sampleRateHz: number;
-  /** Fitted (rows − 1)/(last − first) [Hz]; null for files without stamps or fewer than 2 rows. */
+  /** Rate of the stamps, gaps and jumps left out [Hz]; null for files without stamps or fewer than 2 rows. */
   fittedRateHz: number | null;
   rows: number;
   /** Rows that could not be read, with the first few examples. */
@@ -58,9 +62,9 @@ export interface IngestReport {
   /** First and last scan, ms UTC (start of scan). */
   firstScanMs: number;
   lastScanMs: number;
-  /** Rows lost because they went back in time by more than the file's clock tolerates. */
   channels: ChannelKey[];
   units: Partial<Record<ChannelKey, string>>;
+  /** In the order of the batches of the chunk file; a half hour may come in several parts. */
   chunks: ChunkIntake[];
   warnings: { code: string; message: string }[];
   /** Last line ended without a line break and with too few fields. */

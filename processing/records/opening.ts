@@ -2,7 +2,8 @@ import type { Layout } from '../schemas/layout';
 import { MAX_FIELDS } from './kernel';
 import { RecordError } from './record-error';
 import { timeFields } from './time-reader';
-import { splitRow, type DelimiterName } from './token';
+import { fieldsOf } from './preview';
+import type { DelimiterName } from './token';
 
 /** What the first bytes of a file show about it. */
 export interface Opening {
@@ -37,6 +38,10 @@ export function highestField(layout: Layout): number {
     time.timeText ?? 0,
     ...time.numbers,
   );
+}
+
+function countFields(line: string, delimiter: DelimiterName, quoted: boolean): number {
+  return fieldsOf(quoted ? line : line.replace(/"/g, ''), delimiter).length;
 }
 
 /** Is this text at all? */
@@ -125,7 +130,7 @@ export function openText(
     samples.push(line);
     // The last piece of an unfinished sample is cut anywhere: only count it when it is the file's only row.
     if (at >= bytes.length && samples.length > 1) break;
-    const count = splitRow(line, layout.delimiter, layout.quoted).length;
+    const count = countFields(line, layout.delimiter, layout.quoted);
     counts.set(count, (counts.get(count) ?? 0) + 1);
   }
   if (samples.length === 0) {
@@ -145,7 +150,7 @@ export function openText(
   if (fieldCount === 1 && needed > 1) {
     const others = (Object.keys(delimiterNames) as DelimiterName[])
       .filter((name) => name !== layout.delimiter)
-      .map((name) => ({ name, fields: splitRow(samples[0], name, layout.quoted).length }))
+      .map((name) => ({ name, fields: countFields(samples[0], name, layout.quoted) }))
       .sort((a, b) => b.fields - a.fields);
     const hint =
       others[0].fields > 1

@@ -1,4 +1,4 @@
-/** The slow path for single tokens, and the plain way to split a row; both say what the kernel must agree with. */
+/** The slow path for single tokens: it says what the kernel must agree with. */
 
 const numeral = /^[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?$/;
 const hexadecimal = /^0[xX][0-9a-fA-F]{1,8}$/;
@@ -62,35 +62,3 @@ export const delimiterBytes: Record<DelimiterName, number> = {
   blanks: 32,
   pipe: 124,
 };
-
-/** Fields of one line, without line break; quotes removed. For the first look at a file, not for the bulk. */
-export function splitRow(line: string, delimiter: DelimiterName, quoted: boolean): string[] {
-  const mark = String.fromCharCode(delimiterBytes[delimiter]);
-  const text = delimiter === 'blanks' ? line.trim().replace(/[ \t]+/g, ' ') : line;
-  if (!quoted || !text.includes('"')) return text.split(mark).map((field) => field.trim());
-  const fields: string[] = [];
-  let at = 0;
-  for (;;) {
-    while (text[at] === ' ') at++;
-    const quoteEnd = text[at] === '"' ? /"(?:[^"]|"")*"/y : null;
-    if (quoteEnd !== null) {
-      quoteEnd.lastIndex = at;
-      const match = quoteEnd.exec(text);
-      if (match !== null) {
-        const after = at + match[0].length;
-        const rest = text.indexOf(mark, after);
-        const between = text.slice(after, rest === -1 ? undefined : rest);
-        if (between.trim() === '') {
-          fields.push(match[0].slice(1, -1).replace(/""/g, '"'));
-          if (rest === -1) return fields;
-          at = rest + 1;
-          continue;
-        }
-      }
-    }
-    const next = text.indexOf(mark, at);
-    fields.push(text.slice(at, next === -1 ? undefined : next).trim());
-    if (next === -1) return fields;
-    at = next + 1;
-  }
-}
