@@ -1,9 +1,10 @@
-import { massRatioDryAirToWater, molarMassWater, sonicHumidityFactor } from '../constants';
+import { molarMassWater } from '../constants';
 import { biasedCovariances } from '../numerics/correlation';
 import type { BiasedCovariances } from '../numerics/correlation';
 import type { RecipeSettings } from '../schemas/recipe';
 import type { AirState, GasKey, PeriodState, ScalarKey } from '../state';
 import { latentHeatOfVaporisation, specificHeat } from '../thermodynamics';
+import { solveDensity } from './density';
 import { addLedger, addSkipped } from './ledger';
 import { quantityText } from './wording';
 
@@ -32,6 +33,9 @@ export function finkelsteinSims(estimates: BiasedCovariances, maxLag: number): n
   return Math.sqrt(Math.max(0, sum / pairs));
 }
 
+/** Fluxes that follow from covariances of w with scalars. */
+type HeatOrGasFlux = 'sensibleHeat' | 'latentHeat' | 'co2Flux';
+
 /** Change of a flux per change of a measured covariance; the covariances are w with Ts [K m s-1], with H2O and with CO2 [mol m-2 s-1]. */
 export interface FluxSensitivity {
   sonicTemperature: number;
@@ -40,19 +44,16 @@ export interface FluxSensitivity {
 }
 
 /**
- * How the fluxes follow from the measured covariances while means and spectral factors hold still: the coupled solution is linear in them.
- *
- * With A, B, C the spectrally corrected covariances, γ = 1 + μσ and κ = 0.51 T̄ (1 − q̄)/ρ̄:
- * w'T' = (A − κγB)/(1 + 0.51 q̄ + κγρ̄v/T̄); E = γ(B + ρ̄v w'T'/T̄); Fc = C + μ(ρ̄c/ρ̄d)B + γ(ρ̄c/T̄) w'T'
+ * How the fluxes follow from the measured covariances while means and spectral factors hold still: the coupled solution of the density
+ * terms is linear in them, so its answer to each covariance alone is the derivative.
  *
  * @param air mean state of the period
  * @param factors spectral factors
  * @param meanCo2 mean CO2 [mol m-3]; NaN when there is none
- * @param hasHumidity whether H2O was measured; without it w'T' is the corrected sonic flux
- * @returns partial derivatives of H [W m-2], LE [W m-2] and FC [mol m-2 s-1]
+ * @param hasHumidity whether H2O was measured
+ * @returns partial derivatives of H [W m-2], LE [W m-2] and FC [mol m-2 s-1]; NaN where the flux cannot be had
  * @assumes no error in means and spectral factors
- * @reference Webb, Pearman & Leuning (1980), Q. J. R. Meteorol. Soc. 106:85–100, eqs 24–25 (from memory); Schotanus et al. (1983),
- *   Boundary-Layer Meteorol. 26:81–93 (sonic humidity, from memory)
+ * @reference Webb, Pearman & Leuning (1980), Q. J. R. Meteorol. Soc. 106:85–100, as `solveDensity` has it
  * @deviates none
  */
 export function fluxSensitivities(
@@ -60,33 +61,32 @@ export function fluxSensitivities(
   factors: { sonicTemperature: number } & Record<GasKey, number>,
   meanCo2: number,
   hasHumidity: boolean,
-): { sensibleHeat: FluxSensitivity; latentHeat: FluxSensitivity; co2Flux: FluxSensitivity } {
-  const { temperatureK, specificHumidity, airDensity, dryAirDensity, vapourDensity } = air;
-  const gamma = 1 + (massRatioDryAirToWater * vapourDensity) / dryAirDensity;
-  const kappa = hasHumidity ? (sonicHumidityFactor * temperatureK * (1 - specificHumidity)) / airDensity : 0;
-  const divisor = 1 + sonicHumidityFactor * specificHumidity + (kappa * gamma * vapourDensity) / temperatureK;
-  // w'T' per measured covariance; H2O is measured in moles, B is in kilograms.
-  const heatByTemperature = factors.sonicTemperature / divisor;
-  const vapourMass = hasHumidity ? molarMassWater * factors.h2o : 0;
-  const heatByVapour = (-kappa * gamma * vapourMass) / divisor;
-  const heat = airDensity * specificHeat(specificHumidity);
-  const evaporationHeat = latentHeatOfVaporisation(temperatureK) * gamma;
-  const vapourPerHeat = vapourDensity / temperatureK;
-  const co2PerHeat = (gamma * meanCo2) / temperatureK;
-  const co2PerVapour = (massRatioDryAirToWater * meanCo2) / dryAirDensity;
-  return {
-    sensibleHeat: { sonicTemperature: heat * heatByTemperature, h2o: heat * heatByVapour, co2: 0 },
-    latentHeat: {
-      sonicTemperature: evaporationHeat * vapourPerHeat * heatByTemperature,
-      h2o: evaporationHeat * (vapourMass + vapourPerHeat * heatByVapour),
-      co2: 0,
-    },
-    co2Flux: {
-      sonicTemperature: co2PerHeat * heatByTemperature,
-      h2o: co2PerVapour * vapourMass + co2PerHeat * heatByVapour,
-      co2: factors.co2,
-    },
+): Record<HeatOrGasFlux, FluxSensitivity> {
+  const heat = air.airDensity * specificHeat(air.specificHumidity);
+  const evaporationHeat = latentHeatOfVaporisation(air.temperatureK);
+  const answerTo = (sonicTemperature: number, h2o: number, co2: number): Record<HeatOrGasFlux, number> => {
+    const solved = solveDensity(
+      {
+        sonicTemperature: sonicTemperature * factors.sonicTemperature,
+        vapour: hasHumidity ? (h2o === 0 ? 0 : h2o * molarMassWater * factors.h2o) : null,
+        co2: co2 === 0 ? 0 : co2 * factors.co2,
+      },
+      air,
+      meanCo2,
+    );
+    return {
+      sensibleHeat: heat * solved.temperatureFlux,
+      latentHeat: evaporationHeat * solved.evaporation,
+      co2Flux: solved.co2Flux,
+    };
   };
+  const alone = { sonicTemperature: answerTo(1, 0, 0), h2o: answerTo(0, 1, 0), co2: answerTo(0, 0, 1) };
+  const of = (flux: HeatOrGasFlux): FluxSensitivity => ({
+    sonicTemperature: alone.sonicTemperature[flux],
+    h2o: alone.h2o[flux],
+    co2: alone.co2[flux],
+  });
+  return { sensibleHeat: of('sensibleHeat'), latentHeat: of('latentHeat'), co2Flux: of('co2Flux') };
 }
 
 /** One part of a combined scalar. */
@@ -126,8 +126,6 @@ export function combineScalars(length: number, parts: readonly CombinedPart[]): 
   }
   return out;
 }
-
-type HeatOrGasFlux = 'sensibleHeat' | 'latentHeat' | 'co2Flux';
 
 /** Scalars without which a flux's combined series has no value; the small humidity part of H may be missing. */
 const requiredScalars: Record<HeatOrGasFlux, readonly ScalarKey[]> = {

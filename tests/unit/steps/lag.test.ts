@@ -4,7 +4,7 @@ import { SplitMix64 } from '../../../processing/numerics/random';
 import { defaultRecipe } from '../../../processing/schemas/recipe';
 import { alignByLag, chooseLag, lagStep, openPathLagWindow } from '../../../processing/steps/lag';
 import { demoSetUp } from '../../../processing/synthetic/demo-scenario';
-import { rolled, stateWith, turbulentSeries } from './turbulent-state';
+import { rolled, stateWith, turbulentSeries, without } from './turbulent-state';
 
 const settings = defaultRecipe.settings.lag;
 const window = { expectedS: 0, halfWidthS: 1 };
@@ -153,7 +153,7 @@ describe('lagStep', () => {
 
   it('has no lag value for a gas without samples, and nothing for one that is not recorded', () => {
     const series = turbulentSeries(11, { length: 6000, sampleRateHz: 10 });
-    const { h2o: _left, ...rest } = series;
+    const rest = without(series, 'h2o');
     const state = lagStep(stateWith({ ...rest, co2: new Float64Array(6000).fill(Number.NaN) }, 10), settings);
     expect(state.values.lagCo2).toBeNaN();
     expect(state.lags.co2?.pairs).toBe(0);

@@ -3,7 +3,7 @@ import { defaultRecipe } from '../../../processing/schemas/recipe';
 import { lagStep } from '../../../processing/steps/lag';
 import { steadyState, steadyStateStep } from '../../../processing/steps/steady-state';
 import type { PeriodState, SeriesKey } from '../../../processing/state';
-import { stateWith, turbulentSeries } from './turbulent-state';
+import { stateWith, turbulentSeries, without } from './turbulent-state';
 
 const settings = defaultRecipe.settings.steadyState;
 
@@ -124,7 +124,7 @@ describe('steadyStateStep', () => {
   });
 
   it('leaves fluxes whose series is not recorded untested', () => {
-    const { co2: _left, ...rest } = turbulentSeries(7, { length: 6000, sampleRateHz: 10 });
+    const rest = without(turbulentSeries(7, { length: 6000, sampleRateHz: 10 }), 'co2');
     const state = run(rest);
     expect(state.values['steadyState.co2Flux']).toBeUndefined();
     expect(state.values['steadyState.momentum']).toBeGreaterThanOrEqual(0);

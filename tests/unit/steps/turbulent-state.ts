@@ -100,3 +100,11 @@ export function rolled(series: Float64Array, by: number): Float64Array {
   const n = series.length;
   return series.map((_, i) => series[(((i - by) % n) + n) % n]);
 }
+
+/** The same series without one. */
+export function without(
+  series: Record<SeriesKey, Float64Array>,
+  key: SeriesKey,
+): Partial<Record<SeriesKey, Float64Array>> {
+  return Object.fromEntries(Object.entries(series).filter(([name]) => name !== key));
+}

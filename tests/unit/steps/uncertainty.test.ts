@@ -44,7 +44,7 @@ describe('fluxSensitivities', () => {
   it('takes the sonic flux for the heat flux where humidity is missing', () => {
     const dry = { ...air, specificHumidity: 0, vapourDensity: 0 };
     const by = fluxSensitivities(dry, { sonicTemperature: 1, h2o: Number.NaN, co2: 1 }, Number.NaN, false);
-    expect(by.sensibleHeat.h2o).toBe(-0);
+    expect(by.sensibleHeat.h2o).toBe(0);
     expect(by.sensibleHeat.sonicTemperature).toBeCloseTo(1.16144204 * 1004.67, 6);
   });
 });
