@@ -1,4 +1,4 @@
-import fc from 'fast-check';
+import * as fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
 import { BlockParser, type BlockParserOptions } from '../../../processing/records/block-parser';
 import { FIRST_NUMBER_COLUMN, TIME_COLUMN } from '../../../processing/records/kernel';
