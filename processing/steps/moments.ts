@@ -1,9 +1,10 @@
+import { seriesLabels } from '../catalogue';
 import { isConstantSignal, moments, pairMoments } from '../numerics/moments';
 import type { RecipeSettings } from '../schemas/recipe';
 import type { MomentState, PeriodState, ScalarKey, SeriesKey } from '../state';
 import { seriesKeys } from '../state';
 import { alignByLag } from './lag';
-import { addLedger, addSkipped, countOf, formatNumber } from './ledger';
+import { addLedger, addReason, addSkipped, countOf, fluxesOf, formatNumber } from './ledger';
 
 const version = 1;
 
@@ -84,9 +85,10 @@ export function momentsStep(state: PeriodState, settings: Pick<RecipeSettings, '
   for (const key of seriesKeys) {
     const series = state.series[key];
     if (!series) continue;
-    const { mean, variance } = moments(series);
+    const { mean, variance, isConstant } = moments(series);
     means[key] = mean;
     variances[key] = variance;
+    if (isConstant) addConstantReason(state, key);
     state.values[sigmaKeys[key]] = Math.sqrt(variance);
   }
   state.values.sonicTemperatureMean = means.sonicTemperature ?? Number.NaN;
@@ -126,6 +128,23 @@ export function momentsStep(state: PeriodState, settings: Pick<RecipeSettings, '
     parameters,
     changes,
     summary: `Covariances over ${countOf(uw.pairs, 'wind sample')}; friction velocity ${formatNumber(ustarMs, 3)} m s-1 before spectral correction.`,
+  });
+}
+
+/** A frozen series takes with it every flux that cannot be had without it: the heat term of a gas flux too. */
+function addConstantReason(state: PeriodState, key: SeriesKey): void {
+  const { label } = seriesLabels[key];
+  const name = `${label[0].toUpperCase()}${label.slice(1)}`;
+  addReason(state, {
+    key: `moments.constant.${key}`,
+    step: 'moments',
+    fluxes: fluxesOf(key, 'absent'),
+    series: key,
+    grade: 2,
+    statistic: { label: 'standard deviation', value: 0, unit: seriesLabels[key].unit },
+    limits: { hardLow: 0 },
+    finding: `${name} does not vary`,
+    sentence: `${name} has one single value throughout the period. Moving air does not stand still: the signal is frozen, and every flux that needs it is wrong.`,
   });
 }
 

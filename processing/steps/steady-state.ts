@@ -1,6 +1,6 @@
 import { fluxLabels } from '../catalogue';
 import { defaultValue } from '../defaults';
-import { mergeMoments, pairMoments } from '../numerics/moments';
+import { isConstantSignal, mergeMoments, pairMoments } from '../numerics/moments';
 import type { PartialMoments } from '../numerics/moments';
 import type { RecipeSettings } from '../schemas/recipe';
 import type { FluxKey, PeriodState, ScalarKey, SeriesKey } from '../state';
@@ -70,7 +70,11 @@ export function steadyState(
       parts.push(Number.NaN);
     }
   }
-  const wholeCovariance = whole.n > 0 ? whole.cxy / whole.n : Number.NaN;
+  const isFrozen =
+    whole.n > 0 &&
+    (isConstantSignal(whole.m2x / whole.n, whole.meanX) ||
+      isConstantSignal(whole.m2y / whole.n, whole.meanY));
+  const wholeCovariance = whole.n === 0 ? Number.NaN : isFrozen ? 0 : whole.cxy / whole.n;
   const shortCovariance = used > 0 ? sum / used : Number.NaN;
   const spread = Math.sqrt(whole.m2x * whole.m2y) / whole.n;
   const testable = used >= Math.min(minimumSubIntervals, subIntervals) && wholeCovariance !== 0;
@@ -146,7 +150,10 @@ export function steadyStateStep(state: PeriodState, settings: RecipeSettings['st
         statistic: { label: 'steady-state deviation', value: null, unit: '%' },
         limits,
         finding: 'Steady state not testable',
-        sentence: `Only ${countWord(found.used)} of the ${shortWords} intervals have enough samples of ${words}, so the test says nothing.`,
+        sentence:
+          found.wholeCovariance === 0
+            ? `The covariance of ${words} is exactly zero, so a deviation from it has no meaning.`
+            : `Only ${countWord(found.used)} of the ${shortWords} intervals have enough samples of ${words}, so the test says nothing.`,
       });
       continue;
     }

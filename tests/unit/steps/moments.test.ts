@@ -120,6 +120,22 @@ describe('momentsStep', () => {
     expect(Math.abs(a / b - 1)).toBeLessThan(2e-3);
   });
 
+  it('rejects every flux that needs a frozen series, gas fluxes through their heat term too', () => {
+    const series = {
+      ...turbulentSeries(6, { length: 6000 }),
+      sonicTemperature: new Float64Array(6000).fill(294.65),
+    };
+    const state = momentsStep(
+      lagStep(stateWith(series, 20), defaultRecipe.settings.lag),
+      defaultRecipe.settings,
+    );
+    expect(state.values.covWTs).toBe(0);
+    expect(state.reasons.find((one) => one.key === 'moments.constant.sonicTemperature')).toMatchObject({
+      grade: 2,
+      fluxes: ['sensibleHeat', 'latentHeat', 'co2Flux'],
+    });
+  });
+
   it('leaves out a gas that is not recorded', () => {
     const rest = without(turbulentSeries(5, { length: 6000 }), 'co2');
     const state = momentsStep(

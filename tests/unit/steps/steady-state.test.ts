@@ -123,6 +123,15 @@ describe('steadyStateStep', () => {
     });
   });
 
+  it('has nothing to compare with where a series is frozen', () => {
+    const series = turbulentSeries(8, { length: 6000, sampleRateHz: 10 });
+    const state = run({ ...series, sonicTemperature: new Float64Array(6000).fill(294.65) });
+    expect(state.values['steadyState.sensibleHeat']).toBeNaN();
+    expect(state.reasons.find((one) => one.key === 'steadyState.sensibleHeat')?.sentence).toContain(
+      'exactly zero',
+    );
+  });
+
   it('leaves fluxes whose series is not recorded untested', () => {
     const rest = without(turbulentSeries(7, { length: 6000, sampleRateHz: 10 }), 'co2');
     const state = run(rest);
