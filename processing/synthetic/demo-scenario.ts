@@ -126,7 +126,7 @@ const driver: DriverSettings = {
   scalarCorrelation: [0.33, 0.25],
 };
 
-/** Wind direction at the hours of the day [deg], not wrapped; the night wind comes round to the mast's side once. */
+/** Wind direction at the hours of the day [deg], not wrapped; on the day with faults the night wind comes round behind the mast. */
 const directionKnots: readonly (readonly [number, number])[] = [
   [0, 285],
   [1, 305],
@@ -150,16 +150,20 @@ const directionKnots: readonly (readonly [number, number])[] = [
   [24, 285],
 ];
 
-function directionAt(hour: number): number {
+/** Where the wind stays on days without planted faults: short of the mast's sector. */
+const mostNortherlyDeg = 350;
+
+function directionAt(hour: number, behindMast: boolean): number {
   const inDay = ((hour % 24) + 24) % 24;
   const next = directionKnots.findIndex(([at]) => at > inDay);
   const [fromHour, fromDeg] = directionKnots[next - 1];
   const [toHour, toDeg] = directionKnots[next];
-  return fromDeg + ((toDeg - fromDeg) * (inDay - fromHour)) / (toHour - fromHour);
+  const direction = fromDeg + ((toDeg - fromDeg) * (inDay - fromHour)) / (toHour - fromHour);
+  return behindMast ? direction : Math.min(direction, mostNortherlyDeg);
 }
 
-function meansAt(hour: number): SlowMeans {
-  const means = slowMeans(hour, directionAt(hour), driver);
+function meansAt(hour: number, behindMast: boolean): SlowMeans {
+  const means = slowMeans(hour, directionAt(hour, behindMast), driver);
   means.pressurePa = 101_150 + 60 * Math.sin((2 * Math.PI * hour) / 24);
   return means;
 }
@@ -381,7 +385,8 @@ export function demoInstruments(): InstrumentDescription {
  */
 export function demoPeriod(day: number, halfHour: number, options: DemoOptions): PeriodDescription {
   const hour = halfHour / 2;
-  const means = { start: meansAt(hour), end: meansAt(hour + 0.5) };
+  const hasFaults = options.faults === 'demo' && day === 0;
+  const means = { start: meansAt(hour, hasFaults), end: meansAt(hour + 0.5, hasFaults) };
   const middle: SlowMeans = {
     speedMs: (means.start.speedMs + means.end.speedMs) / 2,
     directionDeg: (means.start.directionDeg + means.end.directionDeg) / 2,
@@ -403,7 +408,7 @@ export function demoPeriod(day: number, halfHour: number, options: DemoOptions):
     means,
     targets,
     instruments: demoInstruments(),
-    faults: options.faults === 'demo' && day === 0 ? (demoFaults[name] ?? []) : [],
+    faults: hasFaults ? (demoFaults[name] ?? []) : [],
   };
 }
 

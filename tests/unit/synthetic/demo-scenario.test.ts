@@ -148,6 +148,9 @@ describe('planted faults', () => {
     expect(off('04:00')).toBeLessThan(45);
     expect(off('03:00')).toBeGreaterThan(47);
     expect(off('04:30')).toBeGreaterThan(47);
+    for (const clean of [demoPeriod(1, 7, options), demoPeriod(0, 8, { ...options, faults: 'none' })]) {
+      expect(Math.abs(((clean.means.end.directionDeg - 45 + 540) % 360) - 180)).toBeGreaterThan(47);
+    }
   });
 });
 
