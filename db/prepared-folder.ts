@@ -5,11 +5,12 @@ import { dirname, join } from 'node:path';
 import { PGlite } from '@electric-sql/pglite';
 import { drizzle } from 'drizzle-orm/pglite';
 import { migrate } from 'drizzle-orm/pglite/migrator';
+import PgBoss from 'pg-boss';
 import { migrationsFolder, migrationsHash } from './migrations';
 
 /**
  * The embedded database: a first start takes many seconds, loading a prepared dump one or two. The dump is built once and kept; it holds
- * the empty, migrated database.
+ * the empty, migrated database with the tables of the job queue.
  */
 
 /** Every commit reaches the disk: the library starts its server with fsync off. */
@@ -28,11 +29,17 @@ async function exists(path: string): Promise<boolean> {
   );
 }
 
-async function libraryVersion(): Promise<string> {
-  // The package does not export its package.json; it stands one folder above its entry.
-  const entry = createRequire(import.meta.url).resolve('@electric-sql/pglite');
-  const text = await readFile(join(dirname(dirname(entry)), 'package.json'), 'utf8');
-  return (JSON.parse(text) as { version: string }).version;
+/** Version of an installed package, also of one that does not export its package.json. */
+async function versionOf(packageName: string): Promise<string> {
+  let folder = dirname(createRequire(import.meta.url).resolve(packageName));
+  for (;;) {
+    const text = await readFile(join(folder, 'package.json'), 'utf8').catch(() => '{}');
+    const { name, version } = JSON.parse(text) as { name?: string; version?: string };
+    if (name === packageName && version !== undefined) return version;
+    if (folder === dirname(folder))
+      throw new Error(`The package ${packageName} is not installed as it must be.`);
+    folder = dirname(folder);
+  }
 }
 
 /**
@@ -41,10 +48,12 @@ async function libraryVersion(): Promise<string> {
  * @param cacheFolder kept between starts; anybody may delete it
  */
 export async function preparedDump(cacheFolder: string): Promise<string> {
-  const path = join(cacheFolder, `empty-database-${await libraryVersion()}-${migrationsHash()}.tar`);
+  const versions = `${await versionOf('@electric-sql/pglite')}-${await versionOf('pg-boss')}`;
+  const path = join(cacheFolder, `empty-database-${versions}-${migrationsHash()}.tar`);
   if (await exists(path)) return path;
   const client = await PGlite.create();
   await migrate(drizzle(client), { migrationsFolder: migrationsFolder() });
+  await client.exec(PgBoss.getConstructionPlans());
   const dump = await client.dumpDataDir('none');
   await client.close();
   await mkdir(cacheFolder, { recursive: true });

@@ -179,6 +179,7 @@ CREATE TABLE "periods" (
 	"outcome" text NOT NULL,
 	"values" jsonb NOT NULL,
 	"grades" jsonb NOT NULL,
+	"main_finding" jsonb NOT NULL,
 	"reasons" jsonb NOT NULL,
 	"ledger" jsonb NOT NULL,
 	"curves" jsonb NOT NULL,

@@ -24,12 +24,24 @@ const environmentSchema = z.object({
   /** First group and its lead on an empty data folder without demonstration; the lead chooses a password by the link in the outbox. */
   GUSTBOOK_FIRST_GROUP: z.string().trim().min(1).max(80).optional(),
   GUSTBOOK_FIRST_LEAD: z.email().optional(),
-  GUSTBOOK_MAX_UPLOAD_BYTES: z.coerce.number().int().positive().default(4 * GIB),
+  GUSTBOOK_MAX_UPLOAD_BYTES: z.coerce
+    .number()
+    .int()
+    .positive()
+    .default(4 * GIB),
   /** A packed file may unpack to this much at most, and to at most this many times its own size. */
-  GUSTBOOK_MAX_UNPACKED_BYTES: z.coerce.number().int().positive().default(32 * GIB),
+  GUSTBOOK_MAX_UNPACKED_BYTES: z.coerce
+    .number()
+    .int()
+    .positive()
+    .default(32 * GIB),
   GUSTBOOK_MAX_EXPANSION: z.coerce.number().positive().default(200),
   GUSTBOOK_MAX_FILES_PER_SYSTEM: z.coerce.number().int().positive().default(200_000),
   GUSTBOOK_WORKERS: z.coerce.number().int().min(1).max(64).optional(),
+  /** Where the development client is served from. */
+  GUSTBOOK_DEV_ORIGIN: z.url({ protocol: /^http$/, hostname: /^(localhost|127\.0\.0\.1)$/ }).optional(),
+  /** A file for the log; without it the log goes to standard output. */
+  GUSTBOOK_LOG_FILE: z.string().min(1).optional(),
   LOG_LEVEL: z.enum(['fatal', 'error', 'warn', 'info', 'debug', 'trace', 'silent']).default('info'),
 });
 
@@ -48,7 +60,9 @@ export interface Config {
   maxExpansion: number;
   maxFilesPerSystem: number;
   workers: number | null;
+  devOrigin: string | null;
   logLevel: string;
+  logFile: string | null;
 }
 
 export function isLoopbackHost(host: string): boolean {
@@ -90,6 +104,8 @@ export function readConfig(environment: Record<string, string | undefined>): Con
     maxExpansion: env.GUSTBOOK_MAX_EXPANSION,
     maxFilesPerSystem: env.GUSTBOOK_MAX_FILES_PER_SYSTEM,
     workers: env.GUSTBOOK_WORKERS ?? null,
+    devOrigin: env.GUSTBOOK_DEV_ORIGIN ?? null,
     logLevel: env.LOG_LEVEL,
+    logFile: env.GUSTBOOK_LOG_FILE === undefined ? null : absolute(env.GUSTBOOK_LOG_FILE),
   };
 }

@@ -6,7 +6,10 @@ function findRoot(): string {
   let folder = dirname(fileURLToPath(import.meta.url));
   for (;;) {
     const manifest = join(folder, 'package.json');
-    if (existsSync(manifest) && (JSON.parse(readFileSync(manifest, 'utf8')) as { name?: string }).name === 'gustbook') {
+    if (
+      existsSync(manifest) &&
+      (JSON.parse(readFileSync(manifest, 'utf8')) as { name?: string }).name === 'gustbook'
+    ) {
       return folder;
     }
     const parent = dirname(folder);

@@ -157,6 +157,7 @@ export async function upsertPeriods(db: Db, rows: (typeof periods.$inferInsert)[
         outcome: sql`excluded.outcome`,
         values: sql`excluded."values"`,
         grades: sql`excluded.grades`,
+        mainFinding: sql`excluded.main_finding`,
         reasons: sql`excluded.reasons`,
         ledger: sql`excluded.ledger`,
         curves: sql`excluded.curves`,
@@ -194,6 +195,7 @@ export interface PeriodSummaryRow {
   outcome: string;
   values: Record<string, number | null>;
   grades: unknown;
+  mainFinding: Record<string, string | null>;
 }
 
 /** Values and grades, without what only the period's own page needs. */
@@ -211,33 +213,7 @@ export async function periodSummaries(
       outcome: periods.outcome,
       values: periods.values,
       grades: periods.grades,
-    })
-    .from(periods)
-    .where(and(eq(periods.runId, runId), gte(periods.startMs, fromMs), lt(periods.startMs, toMs)))
-    .orderBy(asc(periods.startMs))
-    .limit(limit);
-}
-
-export interface PeriodReasonsRow extends PeriodSummaryRow {
-  reasons: unknown;
-}
-
-/** As `periodSummaries`, with reasons. */
-export async function periodsWithReasons(
-  db: Db,
-  runId: string,
-  fromMs: number,
-  toMs: number,
-  limit: number,
-): Promise<PeriodReasonsRow[]> {
-  return db
-    .select({
-      startMs: periods.startMs,
-      endMs: periods.endMs,
-      outcome: periods.outcome,
-      values: periods.values,
-      grades: periods.grades,
-      reasons: periods.reasons,
+      mainFinding: periods.mainFinding,
     })
     .from(periods)
     .where(and(eq(periods.runId, runId), gte(periods.startMs, fromMs), lt(periods.startMs, toMs)))

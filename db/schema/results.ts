@@ -85,6 +85,8 @@ export const periods = pgTable(
     outcome: text('outcome').notNull(),
     values: jsonb('values').$type<Record<string, number | null>>().notNull(),
     grades: jsonb('grades').$type<unknown>().notNull(),
+    /** By flux, the finding that decides its grade: for tables, without reading all reasons. */
+    mainFinding: jsonb('main_finding').$type<Record<string, string | null>>().notNull(),
     reasons: jsonb('reasons').$type<unknown>().notNull(),
     ledger: jsonb('ledger').$type<unknown>().notNull(),
     curves: jsonb('curves').$type<unknown>().notNull(),

@@ -31,6 +31,11 @@ export async function ensureAccount(
       password: await context.password.hash(person.password),
     });
   }
-  await addMember(db, { id: randomUUID(), organizationId: person.groupId, userId: user.id, role: person.role });
+  await addMember(db, {
+    id: randomUUID(),
+    organizationId: person.groupId,
+    userId: user.id,
+    role: person.role,
+  });
   return user.id;
 }

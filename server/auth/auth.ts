@@ -5,6 +5,7 @@ import { drizzleAdapter } from 'better-auth/adapters/drizzle';
 import { organization } from 'better-auth/plugins';
 import type { Db } from '../../db/client';
 import * as schema from '../../db/schema';
+import type { Log } from '../log';
 import type { SendMail } from '../mail/outbox';
 import { accessControl, pluginRoles } from './access';
 import { isDemoEmail } from './demo-accounts';
@@ -18,6 +19,7 @@ export interface AuthOptions {
   baseUrl: string;
   trustedOrigins: string[];
   sendMail: SendMail;
+  log: Log;
 }
 
 export function createAuth(options: AuthOptions) {
@@ -51,6 +53,11 @@ export function createAuth(options: AuthOptions) {
     // Requests are counted once, in front of all routes.
     rateLimit: { enabled: false },
     telemetry: { enabled: false },
+    logger: {
+      level: 'warn',
+      // What it calls an error is mostly a person's slip (a wrong password, a foreign page).
+      log: (level, message, ...details) => options.log.info({ level, details }, `sign-in: ${message}`),
+    },
     advanced: {
       // Without this the library drops its origin check when it believes that it runs under test.
       disableOriginCheck: false,

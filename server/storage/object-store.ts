@@ -9,6 +9,7 @@ import { join } from 'node:path';
 export class ObjectStore {
   private readonly objects: string;
   private readonly incoming: string;
+  private readonly turns = new Map<string, Promise<unknown>>();
 
   constructor(dataFolder: string) {
     this.objects = join(dataFolder, 'objects');
@@ -66,6 +67,22 @@ export class ObjectStore {
     await rename(temporary, target);
     await syncFolder(folder);
     if (isNewFolder) await syncFolder(this.objects);
+  }
+
+  /**
+   * Runs one piece of work per key (a hash, or a system's id) at a time, so that the last reference to an object cannot go while another is being made. The data
+   * folder belongs to one process.
+   */
+  async exclusively<T>(key: string, work: () => Promise<T>): Promise<T> {
+    const before = this.turns.get(key) ?? Promise.resolve();
+    const turn = before.then(work, work);
+    const settled = turn.catch(() => undefined);
+    this.turns.set(key, settled);
+    try {
+      return await turn;
+    } finally {
+      if (this.turns.get(key) === settled) this.turns.delete(key);
+    }
   }
 
   async discard(temporary: string): Promise<void> {

@@ -1,0 +1,136 @@
+import type { RawFileRow } from '../../db/queries/raw-files';
+import type { SetUpRow } from '../../db/queries/stations';
+import { contentHash } from '../../processing/canonical';
+import type { IngestReport } from '../../processing/chunks/chunk';
+
+/**
+ * All that a run's numbers depend on, by hash. Two runs with the same manifest and recipe, computed by the same software version, have
+ * the same result.
+ */
+export interface RunManifest {
+  schema: 'gustbook/manifest/1';
+  softwareVersion: string;
+  recipeHash: string;
+  utcOffsetMinutes: number;
+  /** Whole periods, ms UTC, half-open. */
+  fromMs: number;
+  toMs: number;
+  /** In order of precedence: where two hold the same instant, the first wins. */
+  rawFiles: { contentHash: string; layoutHash: string }[];
+  /** In the order of their dates. */
+  setUps: { hash: string; validFromMs: number }[];
+}
+
+export function manifestHash(manifest: RunManifest): string {
+  return contentHash(manifest);
+}
+
+/**
+ * The set-ups that hold: of revisions with the same date the newest, ordered by date.
+ *
+ * A revision corrects an earlier one of the same date and adds to those of other dates.
+ */
+export function effectiveSetUps<Row extends Pick<SetUpRow, 'validFromMs' | 'revision'>>(
+  revisions: Row[],
+): Row[] {
+  const byDate = new Map<number, Row>();
+  for (const revision of revisions) {
+    const known = byDate.get(revision.validFromMs);
+    if (known === undefined || revision.revision > known.revision) byDate.set(revision.validFromMs, revision);
+  }
+  return [...byDate.values()].sort((a, b) => a.validFromMs - b.validFromMs);
+}
+
+/** Set-ups that bear on [fromMs, toMs): those that begin inside it, and the one in force at its start. */
+export function setUpsWithin<Row extends { validFromMs: number }>(
+  effective: Row[],
+  fromMs: number,
+  toMs: number,
+): Row[] {
+  return effective.filter((setUp, k) => {
+    const endsMs = effective[k + 1]?.validFromMs ?? Infinity;
+    return setUp.validFromMs < toMs && endsMs > fromMs;
+  });
+}
+
+export type UsableFile = Pick<
+  RawFileRow,
+  'id' | 'state' | 'withdrawnAt' | 'supersededBy' | 'contentHash' | 'firstScanMs' | 'lastScanMs' | 'rows'
+>;
+
+/**
+ * Files that count: read, not withdrawn, and not the beginning of a grown file that counts itself.
+ *
+ * A chain of grown files is followed to its end, so that withdrawing the longest brings back only the next.
+ */
+export function filesInUse<Row extends UsableFile>(rows: Row[]): Row[] {
+  const byId = new Map(rows.map((row) => [row.id, row]));
+  const counts = (row: Row) => row.state === 'read' && row.withdrawnAt === null;
+  const isReplaced = (row: Row): boolean => {
+    const seen = new Set<string>([row.id]);
+    let at = row;
+    while (at.supersededBy !== null) {
+      const next = byId.get(at.supersededBy);
+      if (next === undefined || seen.has(next.id)) return false;
+      if (counts(next)) return true;
+      seen.add(next.id);
+      at = next;
+    }
+    return false;
+  };
+  return rows.filter((row) => counts(row) && !isReplaced(row));
+}
+
+/**
+ * Precedence by content, never by the order in which files were brought in: the earlier first scan, then more scans, then the smaller
+ * content hash.
+ */
+export function byPrecedence<Row extends UsableFile>(a: Row, b: Row): number {
+  const first = (a.firstScanMs ?? Infinity) - (b.firstScanMs ?? Infinity);
+  if (first !== 0 && !Number.isNaN(first)) return first;
+  const scans = (b.rows ?? 0) - (a.rows ?? 0);
+  if (scans !== 0) return scans;
+  return a.contentHash < b.contentHash ? -1 : a.contentHash > b.contentHash ? 1 : 0;
+}
+
+/** Does a read file hold scans in [fromMs, toMs), with a margin on both sides for methods that look beyond the period? */
+export function reaches(row: UsableFile, fromMs: number, toMs: number, marginMs: number): boolean {
+  return (
+    row.firstScanMs !== null &&
+    row.lastScanMs !== null &&
+    row.firstScanMs < toMs + marginMs &&
+    row.lastScanMs >= fromMs - marginMs
+  );
+}
+
+/** Averaging periods are counted from midnight of station standard time. */
+export function wholePeriods(
+  fromMs: number,
+  toMs: number,
+  minutes: number,
+  utcOffsetMinutes: number,
+): { fromMs: number; toMs: number; startsMs: number[] } {
+  const span = minutes * 60_000;
+  const offset = utcOffsetMinutes * 60_000;
+  const first = Math.floor((fromMs + offset) / span) * span - offset;
+  const end = Math.ceil((toMs + offset) / span) * span - offset;
+  const startsMs: number[] = [];
+  for (let at = first; at < end; at += span) startsMs.push(at);
+  return { fromMs: first, toMs: end, startsMs };
+}
+
+/** Span of a set of files: from the first scan to just behind the last. */
+export function recordedSpan(
+  rows: UsableFile[],
+  reports: (IngestReport | null)[],
+): { fromMs: number; toMs: number } | null {
+  let fromMs = Infinity;
+  let toMs = -Infinity;
+  rows.forEach((row, k) => {
+    if (row.firstScanMs === null || row.lastScanMs === null) return;
+    fromMs = Math.min(fromMs, row.firstScanMs);
+    const rate = reports[k]?.sampleRateHz;
+    toMs = Math.max(toMs, row.lastScanMs + (rate ? 1000 / rate : 1));
+  });
+  return fromMs < toMs ? { fromMs, toMs } : null;
+}
