@@ -134,7 +134,7 @@ function noteConstantMajority(state: PeriodState, key: SeriesKey, middle: number
   addReason(state, {
     key: `despiking.constantMajority.${key}`,
     step: 'despiking',
-    fluxes: fluxesOf(key),
+    fluxes: fluxesOf(key, 'absent'),
     series: key,
     grade: state.settings.screening.hardGrade,
     statistic: { label: 'value of more than half the samples', value: middle, unit: innerUnits[key] },

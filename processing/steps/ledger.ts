@@ -35,7 +35,7 @@ const fluxesWithout: Record<SeriesKey, readonly FluxKey[]> = {
  * part in the humidity correction of sensible heat lowers no grade.
  *
  * @param series the working series
- * @param finding `doubtful`: present, but flagged; `absent`: dropped or never recorded
+ * @param finding `doubtful`: present, but unusual; `absent`: broken, dropped or never recorded
  * @returns flux keys in the fixed order of `fluxKeys`; a fresh array
  * @reference project choice
  */

@@ -305,7 +305,7 @@ function judge(
   addReason(state, {
     key: `plausibility.${key}`,
     step: 'plausibility',
-    fluxes: fluxesOf(key),
+    fluxes: fluxesOf(key, percent > settings.hardRemovedPercent ? 'absent' : 'doubtful'),
     series: key,
     grade: gradeAbove(percent, 0, settings.hardRemovedPercent, softGrade, hardGrade),
     statistic: { label: `implausible samples, ${label}`, value: percent, unit: '%' },

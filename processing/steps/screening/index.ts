@@ -101,7 +101,8 @@ export const screeningStep: Step<Settings> = (state, settings) => {
     addReason(state, {
       key: `screening.${test}${series === null ? '' : `.${series}`}`,
       step: 'screening',
-      fluxes: extra.fluxes ?? (series === null ? [] : fluxesOf(series)),
+      // A hard flag speaks of a broken signal: every flux that needs the series falls with it.
+      fluxes: extra.fluxes ?? (series === null ? [] : fluxesOf(series, flag === 2 ? 'absent' : 'doubtful')),
       series,
       grade,
       statistic,
