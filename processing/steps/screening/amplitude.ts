@@ -20,7 +20,7 @@ export interface AmplitudeFindings {
   /** The same for bins whose centre lies outside of the 10th to 90th percentile of the window. */
   extremeShare: number;
   extremeAt: number;
-  /** Share of all judged samples that follow one in the same bin [1]: information only. */
+  /** Share of all judged samples that have a neighbour in the same bin [1]: information only. */
   sameBinShare: number;
 }
 
@@ -85,7 +85,7 @@ export function amplitudeTests(
     const variance = part.squares / n;
     const range = max - min;
     if (!(range > 0) || isConstantSignal(variance, mean)) {
-      same += n - 1;
+      same += n;
       if ((bins - 1) / bins > mostEmpty) {
         mostEmpty = (bins - 1) / bins;
         found.emptyAt = start;
@@ -115,7 +115,7 @@ export function amplitudeTests(
       counts[bin]++;
       if (bin === previous) {
         run++;
-        same++;
+        same += run === 2 ? 2 : 1;
       } else {
         if (previous >= 0 && run > longest[previous]) longest[previous] = run;
         previous = bin;

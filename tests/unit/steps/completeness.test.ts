@@ -10,7 +10,7 @@ import {
   gradeOfMissing,
 } from '../../../processing/steps/completeness';
 import type { Recorded } from './recorded-state';
-import { plainChannels, recordedState } from './recorded-state';
+import { channelsWithout, plainChannels, recordedState } from './recorded-state';
 
 const limits = defaultRecipe.settings.completeness;
 const n = 1000;
@@ -127,13 +127,11 @@ describe('completeness step', () => {
   });
 
   it('stops without a wind component, but not without a gas', () => {
-    const { windV: _absent, ...noV } = plainChannels(n);
-    const stopped = judged({ values: noV });
+    const stopped = judged({ values: channelsWithout('windV', n) });
     expect(stopped.stopped).toBe(true);
     expect(reasonOf(stopped, 'completeness.windV')?.fluxes).toHaveLength(4);
 
-    const { co2: _gas, ...noCo2 } = plainChannels(n);
-    const going = judged({ values: noCo2 });
+    const going = judged({ values: channelsWithout('co2', n) });
     expect(going.stopped).toBe(false);
     expect(reasonOf(going, 'completeness.co2')).toMatchObject({ grade: 2, fluxes: ['co2Flux'] });
   });

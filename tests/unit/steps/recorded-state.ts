@@ -109,3 +109,13 @@ export function withGaps(values: Float64Array, first: number, every: number): Fl
   for (let i = first; i < out.length; i += every) out[i] = NaN;
   return out;
 }
+
+/** All channels but one. */
+export function channelsWithout(
+  missing: SeriesKey,
+  length: number,
+): Partial<Record<SeriesKey, Float64Array>> {
+  const values: Partial<Record<SeriesKey, Float64Array>> = plainChannels(length);
+  delete values[missing];
+  return values;
+}

@@ -1,4 +1,4 @@
-import fc from 'fast-check';
+import * as fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
 import { completenessStep } from '../../../processing/steps/completeness';
 import { plausibilityStep } from '../../../processing/steps/plausibility';
@@ -12,7 +12,7 @@ import {
   unitsStep,
 } from '../../../processing/steps/units';
 import type { Recorded } from './recorded-state';
-import { plainChannels, recordedState } from './recorded-state';
+import { channelsWithout, plainChannels, recordedState } from './recorded-state';
 
 const share = fc.double({ min: 1e-7, max: 0.5, noNaN: true });
 
@@ -140,9 +140,9 @@ describe('units step', () => {
   });
 
   it('converts CO2 without any H2O as if the air were dry', () => {
-    const { h2o: _absent, ...values } = plainChannels(200);
-    values.co2.fill(400);
-    values.sonicTemperature.fill(298.15);
+    const values = channelsWithout('h2o', 200);
+    values.co2!.fill(400);
+    values.sonicTemperature!.fill(298.15);
     const state = run({
       values: { ...values, airPressure: pressure(200) },
       gasMeasures: { co2: 'mole-fraction' },
