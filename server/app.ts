@@ -180,7 +180,7 @@ function asAppError(cause: unknown): AppError {
     }
     return new AppError('invalid_input', {
       userMessage:
-        'The upload is not as it must be, so nothing was stored. Send the fields id and layoutId, then one file.',
+        'The upload is not as it must be: the fields id and layoutId, then one file. Nothing of the rest was stored. Send each file by itself.',
       fields: [{ path: cause.field ?? 'file', message: cause.message }],
       cause,
     });

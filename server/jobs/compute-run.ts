@@ -13,6 +13,7 @@ import type { RunRow } from '../../db/queries/runs';
 import { setUpsOf, stationBySystem } from '../../db/queries/stations';
 import type { StationRow } from '../../db/queries/stations';
 import { contentHash } from '../../processing/canonical';
+import { comparePrecedence } from '../../processing/chunks/precedence';
 import { fluxKeys } from '../../processing/state';
 import type { FluxKey, PeriodResult } from '../../processing/state';
 import type { Run } from '../contract/api';
@@ -30,9 +31,9 @@ import {
 import { packRun } from '../services/packed-columns';
 import { recipeOf } from '../services/recipes';
 import {
-  byPrecedence,
   effectiveSetUps,
   filesInUse,
+  lookAround,
   manifestHash,
   reaches,
   recordedSpan,
@@ -43,7 +44,6 @@ import type { RunManifest } from '../services/run-manifest';
 import { publishRun } from '../services/runs';
 import type { ComputeRequest, Engine } from './engine';
 
-const DAY_MS = 86_400_000;
 /** Periods written by one statement, and how long one may wait for company. */
 const WRITE_AT_ONCE = 8;
 const WRITE_EVERY_MS = 400;
@@ -152,9 +152,11 @@ async function planRun(
     settings.averaging.minutes,
     utcOffsetMinutes,
   );
-  if (startsMs.length === 0 || !inUse.some((file) => reaches(file, fromMs, toMs, 0))) return null;
-  const lookBackMs = settings.diagnostics.signalStrength.referenceDays * DAY_MS;
-  const files = inUse.filter((file) => reaches(file, fromMs, toMs, lookBackMs)).sort(byPrecedence);
+  if (startsMs.length === 0 || !inUse.some((file) => reaches(file, fromMs, toMs))) return null;
+  const { backMs, aheadMs } = lookAround(settings);
+  const files = inUse
+    .filter((file) => reaches(file, fromMs - backMs, toMs + aheadMs))
+    .sort((a, b) => comparePrecedence(reportDocument(a)!, reportDocument(b)!));
   const setUps = setUpsWithin(effectiveSetUps(await setUpsOf(deps.db, run.systemId)), fromMs, toMs);
   return {
     manifest: {

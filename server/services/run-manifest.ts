@@ -2,6 +2,7 @@ import type { RawFileRow } from '../../db/queries/raw-files';
 import type { SetUpRow } from '../../db/queries/stations';
 import { contentHash } from '../../processing/canonical';
 import type { IngestReport } from '../../processing/chunks/chunk';
+import type { RecipeSettings } from '../../processing/schemas/recipe';
 
 /**
  * All that a run's numbers depend on, by hash. Two runs with the same manifest and recipe, computed by the same software version, have
@@ -81,26 +82,18 @@ export function filesInUse<Row extends UsableFile>(rows: Row[]): Row[] {
   return rows.filter((row) => counts(row) && !isReplaced(row));
 }
 
-/**
- * Precedence by content, never by the order in which files were brought in: the earlier first scan, then more scans, then the smaller
- * content hash.
- */
-export function byPrecedence<Row extends UsableFile>(a: Row, b: Row): number {
-  const first = (a.firstScanMs ?? Infinity) - (b.firstScanMs ?? Infinity);
-  if (first !== 0 && !Number.isNaN(first)) return first;
-  const scans = (b.rows ?? 0) - (a.rows ?? 0);
-  if (scans !== 0) return scans;
-  return a.contentHash < b.contentHash ? -1 : a.contentHash > b.contentHash ? 1 : 0;
+/** How far outside its span a run looks [ms]: back for the signal-strength reference, ahead and back for storage at the edges. */
+export function lookAround(settings: RecipeSettings): { backMs: number; aheadMs: number } {
+  const edgeMs = settings.storage.method === 'none' ? 0 : settings.storage.edgeMinutes * 60_000;
+  return {
+    backMs: Math.max(edgeMs, settings.diagnostics.signalStrength.referenceDays * 86_400_000),
+    aheadMs: edgeMs,
+  };
 }
 
-/** Does a read file hold scans in [fromMs, toMs), with a margin on both sides for methods that look beyond the period? */
-export function reaches(row: UsableFile, fromMs: number, toMs: number, marginMs: number): boolean {
-  return (
-    row.firstScanMs !== null &&
-    row.lastScanMs !== null &&
-    row.firstScanMs < toMs + marginMs &&
-    row.lastScanMs >= fromMs - marginMs
-  );
+/** Does a read file hold scans in [fromMs, toMs)? */
+export function reaches(row: Pick<UsableFile, 'firstScanMs' | 'lastScanMs'>, fromMs: number, toMs: number): boolean {
+  return row.firstScanMs !== null && row.lastScanMs !== null && row.firstScanMs < toMs && row.lastScanMs >= fromMs;
 }
 
 /** Averaging periods are counted from midnight of station standard time. */

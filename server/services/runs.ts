@@ -21,6 +21,7 @@ import type { GroupContext } from '../routes/route';
 import { dropDerived } from './derived-files';
 import { recipeDocument } from './documents';
 import { recipeOf } from './recipes';
+import { lookAround } from './run-manifest';
 import { staleReasons } from './staleness';
 import type { SystemInputs } from './staleness';
 import { refuseUnconfirmed, stationOf } from './stations';
@@ -41,13 +42,13 @@ async function withStaleness(
 ): Promise<{ row: RunRow; stale: string[] }[]> {
   if (!rows.some((row) => finished.includes(row.state))) return rows.map((row) => ({ row, stale: [] }));
   const inputs = await inputsOf(deps, systemId);
-  const lookBack = new Map<string, number>();
+  const around = new Map<string, ReturnType<typeof lookAround>>();
   for (const { groupId, recipeHash } of rows) {
-    if (lookBack.has(recipeHash)) continue;
+    if (around.has(recipeHash)) continue;
     const recipe = recipeDocument(await recipeOf(deps.db, groupId, recipeHash));
-    lookBack.set(recipeHash, recipe.settings.diagnostics.signalStrength.referenceDays);
+    around.set(recipeHash, lookAround(recipe.settings));
   }
-  return rows.map((row) => ({ row, stale: staleReasons(row, inputs, lookBack.get(row.recipeHash) ?? 0) }));
+  return rows.map((row) => ({ row, stale: staleReasons(row, inputs, around.get(row.recipeHash)!) }));
 }
 
 /** All runs of a system as they go out, newest first. */

@@ -11,8 +11,6 @@ export interface SystemInputs {
   setUps: SetUpRow[];
 }
 
-const DAY_MS = 86_400_000;
-
 function day(ms: number, utcOffsetMinutes: number): string {
   return new Date(ms + utcOffsetMinutes * 60_000).toISOString().slice(0, 10);
 }
@@ -32,9 +30,9 @@ const were = (files: string[]) => (files.length === 1 ? 'was' : 'were');
  * Compares what the run used with what it would use now, so that nothing has to be marked when a correction is made, and taking a
  * correction back makes the run current again.
  *
- * @param lookBackDays how far before its span the recipe looks, for reference statistics [d]
+ * @param around how far outside its span the run's recipe looks [ms]
  */
-export function staleReasons(run: RunRow, inputs: SystemInputs, lookBackDays: number): string[] {
+export function staleReasons(run: RunRow, inputs: SystemInputs, around: { backMs: number; aheadMs: number }): string[] {
   const manifest = manifestDocument(run);
   if (manifest === null || !['done', 'failed', 'cancelled'].includes(run.state)) return [];
   const { fromMs, toMs, utcOffsetMinutes } = manifest;
@@ -72,7 +70,7 @@ export function staleReasons(run: RunRow, inputs: SystemInputs, lookBackDays: nu
   const wantsEverything = run.askedFromMs === null && run.askedToMs === null;
   const added = inUse
     .filter((row) => !usedLayouts.has(row.contentHash))
-    .filter((row) => wantsEverything || reaches(row, fromMs, toMs, lookBackDays * DAY_MS))
+    .filter((row) => wantsEverything || reaches(row, fromMs - around.backMs, toMs + around.aheadMs))
     .map((row) => row.fileName);
 
   if (gone.withdrawn.length > 0) reasons.push(`${named(gone.withdrawn)} ${were(gone.withdrawn)} withdrawn.`);

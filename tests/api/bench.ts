@@ -157,7 +157,10 @@ export class Bench {
       .set('origin', this.url)
       .send({ email, password })
       .expect(200);
-    return (answer.get('set-cookie') ?? []).map((cookie) => cookie.split(';')[0]).join('; ');
+    return [answer.get('set-cookie') ?? []]
+      .flat()
+      .map((cookie) => cookie.split(';')[0])
+      .join('; ');
   }
 
   /** A request as a browser of this person sends it; null for nobody. */
