@@ -28,6 +28,11 @@ describe('limits', () => {
     expect(Array.from(values)).toEqual([-10, 10, NaN, NaN, 0, NaN, NaN, NaN]);
   });
 
+  it('accept a limit of zero', () => {
+    expect(leaveOutOutside(Float64Array.of(0, -1e-9), { low: 0, high: 1 })).toEqual({ low: 1, high: 0 });
+    expect(leaveOutOutside(Float64Array.of(0, 1e-9), { low: -1, high: 0 })).toEqual({ low: 0, high: 1 });
+  });
+
   it('accept a limit that was stored once in single precision', () => {
     // −40 °C in kelvin is stored as 233.14999389648438.
     const values = Float64Array.from(Float32Array.of(233.15, 333.15));

@@ -71,6 +71,36 @@ describe('amplitude resolution and dropouts', () => {
     expect(lastInParts).toEqual(last);
   });
 
+  it('decide by the centre of a bin whether it lies outside of the percentiles', () => {
+    /** 200 values from 0 to 1 in 10 bins: 15 in a row at 0.92, `beside` more in the top bin at `value`, the rest spread below. */
+    const record = (beside: number, value: number) => {
+      const low = Array.from({ length: 185 - beside }, (_, i) => (i % 9) / 10 + 0.05);
+      low[0] = 0;
+      const spread: number[] = [];
+      low.forEach((x, i) => {
+        spread.push(x);
+        if (i < beside) spread.push(i === 0 ? 1 : value);
+      });
+      return Float64Array.from([
+        ...spread.slice(0, 100),
+        ...new Array<number>(15).fill(0.92),
+        ...spread.slice(100),
+      ]);
+    };
+    // The 90th percentile lies at index 179.1. With 15 more above, the run fills indices 170–184: 0.92 is below the centre 0.95.
+    const outside = record(15, 0.925);
+    // With 25 more at 0.98 it fills 160–174, and the percentile is 0.98, above the centre.
+    const inside = record(25, 0.98);
+    for (const turn of [(x: number) => x, (x: number) => 1 - x]) {
+      const beyond = amplitudeTests(outside.map(turn), 200, 200, 10);
+      expect(beyond.extremeShare).toBeCloseTo(0.075, 12);
+      expect(beyond.interiorShare).toBeLessThan(0.02);
+      const within = amplitudeTests(inside.map(turn), 200, 200, 10);
+      expect(within.interiorShare).toBeCloseTo(0.075, 12);
+      expect(within.extremeShare).toBeLessThan(0.02);
+    }
+  });
+
   it('see a constant window as one bin, hard on both counts', () => {
     const values = slowSeries(8, 3000);
     values.fill(2, 1000, 2000);
