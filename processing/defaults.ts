@@ -134,19 +134,11 @@ const recipeRows: DefaultEntry[] = [
     ],
     [
       'lag.differencePercent.soft',
-      15,
-      '%',
-      'Covariance gained by lag, soft',
-      'project-choice',
-      `the test is in ${vickersMahrt}; the limit is a placeholder`,
-    ],
-    [
-      'lag.differencePercent.hard',
       30,
       '%',
-      'Covariance gained by lag, hard',
+      'Covariance gained by lag, soft; no hard limit',
       'project-choice',
-      `the test is in ${vickersMahrt}; the limit is a placeholder`,
+      `the test is in ${vickersMahrt}, its limits are not known to us: see docs/decisions/0005`,
     ],
     [
       'angleOfAttack.sharePercent.soft',

@@ -174,7 +174,7 @@ export const defaultRecipe: Recipe = {
       skewness: { soft: { low: -1, high: 1 }, hard: { low: -2, high: 2 } },
       kurtosis: { soft: { low: 2, high: 5 }, hard: { low: 1, high: 8 } },
       discontinuities: { windowS: 300, mean: { soft: 2, hard: 3 }, variance: { soft: 2, hard: 3 } },
-      lag: { windowS: 2, differencePercent: { soft: 15, hard: 30 } },
+      lag: { windowS: 2, differencePercent: { soft: 30, hard: null } },
       angleOfAttack: { sharePercent: { soft: 5, hard: 20 } },
       windNonstationarity: { ratio: { soft: 0.5, hard: null } },
       softGrade: 1,
