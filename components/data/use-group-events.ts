@@ -18,8 +18,12 @@ export function applyGroupEvent(client: QueryClient, group: string, event: Group
   switch (event.type) {
     case 'raw-file': {
       const { rawFile, share, stationSlug } = event;
-      const before = client.getQueryData<RawFile[]>(rawFileKeys.all(group, stationSlug))?.find((file) => file.id === rawFile.id);
-      client.setQueryData<RawFile[]>(rawFileKeys.all(group, stationSlug), (files) => mergeRawFile(files, rawFile));
+      const before = client
+        .getQueryData<RawFile[]>(rawFileKeys.all(group, stationSlug))
+        ?.find((file) => file.id === rawFile.id);
+      client.setQueryData<RawFile[]>(rawFileKeys.all(group, stationSlug), (files) =>
+        mergeRawFile(files, rawFile),
+      );
       client.setQueryData<ReadingShares>(rawFileKeys.progress(group), (shares = {}) => {
         const { [rawFile.id]: _, ...others } = shares;
         return rawFile.state === 'reading' && share !== null ? { ...others, [rawFile.id]: share } : others;
@@ -35,18 +39,22 @@ export function applyGroupEvent(client: QueryClient, group: string, event: Group
     }
     case 'run': {
       const { run, stationSlug } = event;
-      const before = client.getQueryData<Run[]>(runKeys.all(group, stationSlug))?.find((known) => known.id === run.id);
+      const before = client
+        .getQueryData<Run[]>(runKeys.all(group, stationSlug))
+        ?.find((known) => known.id === run.id);
       client.setQueryData<Run[]>(runKeys.all(group, stationSlug), (runs) => mergeRun(runs, run));
       if (before?.state !== run.state) {
         void client.invalidateQueries({ queryKey: stationKeys.all(group) });
         void client.invalidateQueries({ queryKey: runResultKeys.spines(group, stationSlug) });
-        if (run.state === 'done') void client.invalidateQueries({ queryKey: runResultKeys.all(group, run.id) });
+        if (run.state === 'done')
+          void client.invalidateQueries({ queryKey: runResultKeys.all(group, run.id) });
       }
       return;
     }
     case 'periods': {
-      client.setQueriesData<unknown>({ queryKey: runResultKeys.periods(group, event.runId) }, (known: unknown) =>
-        mergePeriods(known, event.periods),
+      client.setQueriesData<unknown>(
+        { queryKey: runResultKeys.periods(group, event.runId) },
+        (known: unknown) => mergePeriods(known, event.periods),
       );
       void client.invalidateQueries({ queryKey: runResultKeys.series(group, event.runId) });
       void client.invalidateQueries({ queryKey: runResultKeys.spines(group, event.stationSlug) });
@@ -101,7 +109,12 @@ export interface EventStreamOptions {
  * Keeps a stream of events open until it is closed. The browser itself reconnects after a broken line; after a refusal (server
  * restarting, session over) it gives up, so then we try again, slower each time.
  */
-export function keepEventStream({ url, onEvent, onReopen, open = (address) => new EventSource(address, { withCredentials: true }) }: EventStreamOptions): () => void {
+export function keepEventStream({
+  url,
+  onEvent,
+  onReopen,
+  open = (address) => new EventSource(address, { withCredentials: true }),
+}: EventStreamOptions): () => void {
   let source: EventSource | null = null;
   let timer: ReturnType<typeof setTimeout> | undefined;
   let waitMs = firstWaitMs;

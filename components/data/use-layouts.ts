@@ -15,7 +15,10 @@ export function useLayouts(group: string, station: string) {
   return useQuery({
     queryKey: layoutKeys.all(group, station),
     queryFn: ({ signal }) =>
-      api(`${stationAddress(group, station)}/layouts`, { signal, parse: (value) => z.array(layoutRevisionSchema).parse(value) }),
+      api(`${stationAddress(group, station)}/layouts`, {
+        signal,
+        parse: (value) => z.array(layoutRevisionSchema).parse(value),
+      }),
   });
 }
 

@@ -18,7 +18,10 @@ export function useRawFiles(group: string, station: string) {
   return useQuery({
     queryKey: rawFileKeys.all(group, station),
     queryFn: ({ signal }) =>
-      api(`${stationAddress(group, station)}/raw-files`, { signal, parse: (value) => z.array(rawFileSchema).parse(value) }),
+      api(`${stationAddress(group, station)}/raw-files`, {
+        signal,
+        parse: (value) => z.array(rawFileSchema).parse(value),
+      }),
   });
 }
 
@@ -64,7 +67,11 @@ export function useChangeRawFile(group: string, station: string) {
 }
 
 /** Which of these SHA-256 hashes are here already. */
-export async function checkHashes(group: string, station: string, sha256: readonly string[]): Promise<Map<string, string>> {
+export async function checkHashes(
+  group: string,
+  station: string,
+  sha256: readonly string[],
+): Promise<Map<string, string>> {
   const answer = await api(`${stationAddress(group, station)}/raw-files/check`, {
     method: 'POST',
     body: { sha256 },

@@ -15,7 +15,10 @@ export function useRecipes(group: string) {
   return useQuery({
     queryKey: recipeKeys.all(group),
     queryFn: ({ signal }) =>
-      api(`/groups/${encodeURIComponent(group)}/recipes`, { signal, parse: (value) => z.array(recipeRecordSchema).parse(value) }),
+      api(`/groups/${encodeURIComponent(group)}/recipes`, {
+        signal,
+        parse: (value) => z.array(recipeRecordSchema).parse(value),
+      }),
   });
 }
 

@@ -22,7 +22,10 @@ export function useRuns(group: string, station: string) {
   return useQuery({
     queryKey: runKeys.all(group, station),
     queryFn: ({ signal }) =>
-      api(`${stationAddress(group, station)}/runs`, { signal, parse: (value) => z.array(runSchema).parse(value) }),
+      api(`${stationAddress(group, station)}/runs`, {
+        signal,
+        parse: (value) => z.array(runSchema).parse(value),
+      }),
   });
 }
 
@@ -37,7 +40,11 @@ export function useStartRun(group: string, station: string) {
   const client = useQueryClient();
   return useMutation({
     mutationFn: (start: StartRun) =>
-      api(`${stationAddress(group, station)}/runs`, { method: 'POST', body: start, parse: (value) => runSchema.parse(value) }),
+      api(`${stationAddress(group, station)}/runs`, {
+        method: 'POST',
+        body: start,
+        parse: (value) => runSchema.parse(value),
+      }),
     onSuccess: (run) => {
       client.setQueryData<Run[]>(runKeys.all(group, station), (runs) => mergeRun(runs, run));
       void client.invalidateQueries({ queryKey: runKeys.all(group, station) });
@@ -50,7 +57,8 @@ export function useCancelRun(group: string, station: string) {
   return useMutation({
     mutationFn: (id: string) =>
       api(`${runAddress(group, id)}/cancel`, { method: 'POST', parse: (value) => runSchema.parse(value) }),
-    onSuccess: (run) => client.setQueryData<Run[]>(runKeys.all(group, station), (runs) => mergeRun(runs, run)),
+    onSuccess: (run) =>
+      client.setQueryData<Run[]>(runKeys.all(group, station), (runs) => mergeRun(runs, run)),
   });
 }
 
@@ -61,7 +69,10 @@ export function useRunDeletion(group: string, id: string | null) {
     enabled: id !== null,
     staleTime: 0,
     queryFn: ({ signal }) =>
-      api(`${runAddress(group, id ?? '')}/deletion`, { signal, parse: (value) => deletionAccountSchema.parse(value) }),
+      api(`${runAddress(group, id ?? '')}/deletion`, {
+        signal,
+        parse: (value) => deletionAccountSchema.parse(value),
+      }),
   });
 }
 

@@ -16,7 +16,10 @@ export function useSetUps(group: string, station: string) {
   return useQuery({
     queryKey: setUpKeys.all(group, station),
     queryFn: ({ signal }) =>
-      api(`${stationAddress(group, station)}/set-ups`, { signal, parse: (value) => z.array(setUpRevisionSchema).parse(value) }),
+      api(`${stationAddress(group, station)}/set-ups`, {
+        signal,
+        parse: (value) => z.array(setUpRevisionSchema).parse(value),
+      }),
   });
 }
 

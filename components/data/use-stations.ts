@@ -22,7 +22,8 @@ export function stationAddress(group: string, slug: string): string {
 export function useStations(group: string) {
   return useQuery({
     queryKey: stationKeys.all(group),
-    queryFn: ({ signal }) => api(`/groups/${encodeURIComponent(group)}/stations`, { signal, parse: parseList }),
+    queryFn: ({ signal }) =>
+      api(`/groups/${encodeURIComponent(group)}/stations`, { signal, parse: parseList }),
   });
 }
 
@@ -38,7 +39,11 @@ export function useCreateStation(group: string) {
   const client = useQueryClient();
   return useMutation({
     mutationFn: (station: CreateStation) =>
-      api(`/groups/${encodeURIComponent(group)}/stations`, { method: 'POST', body: station, parse: parseOne }),
+      api(`/groups/${encodeURIComponent(group)}/stations`, {
+        method: 'POST',
+        body: station,
+        parse: parseOne,
+      }),
     onSuccess: (summary) => {
       client.setQueryData(stationKeys.one(group, summary.station.slug), summary);
       void client.invalidateQueries({ queryKey: stationKeys.all(group), exact: true });
@@ -53,7 +58,10 @@ export function useStationDeletion(group: string, slug: string, enabled: boolean
     enabled,
     staleTime: 0,
     queryFn: ({ signal }) =>
-      api(`${stationAddress(group, slug)}/deletion`, { signal, parse: (value) => deletionAccountSchema.parse(value) }),
+      api(`${stationAddress(group, slug)}/deletion`, {
+        signal,
+        parse: (value) => deletionAccountSchema.parse(value),
+      }),
   });
 }
 

@@ -373,7 +373,11 @@ function datesIn(text: string, keepLabel: boolean): DateFound[] {
     if (Number.isNaN(foundMs)) continue;
     const label = keepLabel ? (/[^\d]*$/.exec(text.slice(0, match.index))?.[0] ?? '') : '';
     const labelled = `${label}${core}`;
-    const isLabelUsable = label !== '' && !patternTokens.test(label) && labelled.length <= 120 && findTimePattern(labelled, [text]) === foundMs;
+    const isLabelUsable =
+      label !== '' &&
+      !patternTokens.test(label) &&
+      labelled.length <= 120 &&
+      findTimePattern(labelled, [text]) === foundMs;
     const pattern = isLabelUsable ? labelled : core;
     if (findTimePattern(pattern, [text]) !== foundMs) continue;
     const date = new Date(foundMs);
@@ -382,7 +386,8 @@ function datesIn(text: string, keepLabel: boolean): DateFound[] {
         pattern,
         text: match[0],
         hasTime: core.includes('hh'),
-        isUtc: match[0].endsWith('Z') || /^[_ -]?(utc|gmt)\b/i.test(text.slice(match.index + match[0].length)),
+        isUtc:
+          match[0].endsWith('Z') || /^[_ -]?(utc|gmt)\b/i.test(text.slice(match.index + match[0].length)),
         month: date.getUTCMonth() + 1,
         day: date.getUTCDate(),
         isAmbiguous,
@@ -503,7 +508,12 @@ function guessTime(context: TimeContext): TimeGuess {
   // date and time in one column
   for (const profile of profiles) {
     const example = profile.tokens.find((token) => token !== '') ?? '';
-    if (share(profile.tokens, (token) => token.length > 10 && Number.isFinite(readIso(token)?.ms ?? Number.NaN)) > 0.9) {
+    if (
+      share(
+        profile.tokens,
+        (token) => token.length > 10 && Number.isFinite(readIso(token)?.ms ?? Number.NaN),
+      ) > 0.9
+    ) {
       const offset = readIso(example)?.zoneMinutes ?? null;
       const guess = done(
         { kind: 'stamp', column: profile.index, format: 'iso' },
@@ -559,8 +569,7 @@ function guessTime(context: TimeContext): TimeGuess {
   const packedClock = profiles.find(
     (profile) =>
       (profile.timeRole === 'clock' || profile.name === null) &&
-      share(profile.tokens, (token) => /^([01]\d|2[0-4])[0-5]\d[0-5]\d([.,]\d+)?$/.test(token)) >
-        0.9 &&
+      share(profile.tokens, (token) => /^([01]\d|2[0-4])[0-5]\d[0-5]\d([.,]\d+)?$/.test(token)) > 0.9 &&
       profile.rising > 0,
   );
   const clockColumn = clock ?? packedClock;
@@ -1507,7 +1516,8 @@ export function guessLayout(input: GuessInput): LayoutGuess {
   const nameDates = datesIn(input.fileName, false);
   const headerDatesBare = headerLines.flatMap((line) => datesIn(line, false));
   // one date in the header is found by its shape alone; of several, the words before it tell them apart
-  const headerDates = headerDatesBare.length > 1 ? headerLines.flatMap((line) => datesIn(line, true)) : headerDatesBare;
+  const headerDates =
+    headerDatesBare.length > 1 ? headerLines.flatMap((line) => datesIn(line, true)) : headerDatesBare;
   const headerRate = rateFromHeader(headerLines);
   const timeGuess = guessTime({
     profiles,

@@ -1,6 +1,14 @@
 import Papa from 'papaparse';
 import type { ChannelKey, Layout, TimeSource } from '../schemas/layout';
-import { compileTimePattern, dayOfYearMs, findTimePattern, findYear, readClock, readIso, readTimePattern } from './time-pattern';
+import {
+  compileTimePattern,
+  dayOfYearMs,
+  findTimePattern,
+  findYear,
+  readClock,
+  readIso,
+  readTimePattern,
+} from './time-pattern';
 import { numericSentinels, readNumber } from './token';
 
 /**
@@ -52,13 +60,15 @@ export function stampReader(
   headerLines: readonly string[],
 ): (fields: readonly string[]) => number | null {
   const { time, decimal, sampleRateHz } = layout;
-  const msOrNull = (reading: { ms: number } | null): number | null => (reading === null || Number.isNaN(reading.ms) ? null : reading.ms);
+  const msOrNull = (reading: { ms: number } | null): number | null =>
+    reading === null || Number.isNaN(reading.ms) ? null : reading.ms;
   const textReader = (format: string): ((token: string) => number | null) => {
     if (format === 'iso') return (token) => msOrNull(readIso(token));
     const pattern = compileTimePattern(format, 'whole');
     return (token) => msOrNull(readTimePattern(pattern, token));
   };
-  const textsOf = (from: 'file-name' | 'header'): readonly string[] => (from === 'file-name' ? [fileName] : headerLines);
+  const textsOf = (from: 'file-name' | 'header'): readonly string[] =>
+    from === 'file-name' ? [fileName] : headerLines;
 
   switch (time.kind) {
     case 'stamp': {
@@ -74,7 +84,8 @@ export function stampReader(
       };
     }
     case 'day-of-year': {
-      const fixedYear = 'column' in time.year ? Number.NaN : findYear(time.year.pattern, textsOf(time.year.from));
+      const fixedYear =
+        'column' in time.year ? Number.NaN : findYear(time.year.pattern, textsOf(time.year.from));
       return (fields) => dayOfYearStampMs(time, decimal, fields, fixedYear);
     }
     case 'epoch':
@@ -115,16 +126,20 @@ function dayOfYearStampMs(
   fields: readonly string[],
   fixedYear: number,
 ): number | null {
-  const number = (column: number | null): number => (column === null ? 0 : numberOf(fields[column] ?? '', decimal));
+  const number = (column: number | null): number =>
+    column === null ? 0 : numberOf(fields[column] ?? '', decimal);
   const year = 'column' in time.year ? number(time.year.column) : fixedYear;
   const day = number(time.dayColumn);
   const wholeDay = Math.floor(day);
   let clockMs: number;
-  if (time.timeFormat === 'fraction-of-day') clockMs = (time.timeColumn === null ? day - wholeDay : number(time.timeColumn)) * dayMs;
-  else if (time.timeFormat === 'clock') clockMs = readClock(fields[time.timeColumn ?? -1] ?? '')?.ms ?? Number.NaN;
+  if (time.timeFormat === 'fraction-of-day')
+    clockMs = (time.timeColumn === null ? day - wholeDay : number(time.timeColumn)) * dayMs;
+  else if (time.timeFormat === 'clock')
+    clockMs = readClock(fields[time.timeColumn ?? -1] ?? '')?.ms ?? Number.NaN;
   else {
     const value = number(time.timeColumn);
-    clockMs = time.timeFormat === 'hhmm' ? (Math.floor(value / 100) * 60 + (value % 100)) * 60_000 : value * 1000;
+    clockMs =
+      time.timeFormat === 'hhmm' ? (Math.floor(value / 100) * 60 + (value % 100)) * 60_000 : value * 1000;
   }
   const stampMs = dayOfYearMs(year, wholeDay) + clockMs + number(time.secondsColumn) * 1000;
   return Number.isNaN(stampMs) ? null : stampMs;

@@ -867,8 +867,15 @@ describe('guessLayout on files that cannot be read safely', () => {
       ),
       'a.csv',
     );
-    expect(found.layout.time).toEqual({ kind: 'date-and-time', dateColumn: 0, dateFormat: 'YYYYMMDD', timeColumn: 1 });
-    expect(found.problems.find((problem) => problem.code === 'stamps-unreadable')).toMatchObject({ severity: 'blocks' });
+    expect(found.layout.time).toEqual({
+      kind: 'date-and-time',
+      dateColumn: 0,
+      dateFormat: 'YYYYMMDD',
+      timeColumn: 1,
+    });
+    expect(found.problems.find((problem) => problem.code === 'stamps-unreadable')).toMatchObject({
+      severity: 'blocks',
+    });
   });
 
   it('says which required quantity is missing', () => {
