@@ -114,6 +114,7 @@ export class ChunkFileEncoder {
       ),
     ];
     const offset = this.#writer.position;
+    this.#makeRoom(length * (4 * children.length + 4) + 64 * children.length + 4096);
     this.#writer.write(
       new RecordBatch(
         this.#schema,
@@ -131,12 +132,15 @@ export class ChunkFileEncoder {
     this.#flush();
   }
 
+  #makeRoom(wanted: number): void {
+    if (this.#buffer.length >= wanted) return;
+    const grown = new Uint8Array(wanted);
+    grown.set(this.#buffer.subarray(0, this.#filled));
+    this.#buffer = grown;
+  }
+
   #gather(bytes: Uint8Array): void {
-    if (this.#filled + bytes.length > this.#buffer.length) {
-      const grown = new Uint8Array(Math.max(this.#buffer.length * 2, this.#filled + bytes.length));
-      grown.set(this.#buffer.subarray(0, this.#filled));
-      this.#buffer = grown;
-    }
+    this.#makeRoom(this.#filled + bytes.length);
     this.#buffer.set(bytes, this.#filled);
     this.#filled += bytes.length;
   }

@@ -34,29 +34,58 @@ export function filesThatCount<Source>(
     });
 }
 
-/**
- * Running reference of signal strength: what clean windows read lately.
- *
- * @param reports of the raw files that count
- * @param atMs start of the period [ms]
- * @param days length of the window that ends with the half hour of the period
- * @param percentile of the half-hourly 95th percentiles in that window
- * @returns signal strength [%]; null when none was recorded in the window
- * @deviates the half-hourly 95th percentiles stand for the samples: a percentile of all samples of the window would need all of them
- */
+/** Half-hourly 95th percentiles of signal strength of all files that count, ordered by time, for running references. */
+export class SignalHistory {
+  readonly #startsMs: number[] = [];
+  readonly #percent: number[] = [];
+
+  constructor(reports: readonly IngestReport[]) {
+    const entries: [number, number][] = [];
+    for (const report of reports) {
+      const factor = report.units.signalStrength === '1' ? 100 : 1;
+      for (const { startMs, signalStrengthP95 } of report.chunks)
+        if (signalStrengthP95 !== null) entries.push([startMs, signalStrengthP95 * factor]);
+    }
+    entries.sort((a, b) => a[0] - b[0] || a[1] - b[1]);
+    for (const [startMs, value] of entries) {
+      this.#startsMs.push(startMs);
+      this.#percent.push(value);
+    }
+  }
+
+  /**
+   * What clean windows read lately.
+   *
+   * @param atMs start of the period [ms]
+   * @param days length of the window that ends with the half hour of the period
+   * @param percentile of the half-hourly 95th percentiles in that window
+   * @returns signal strength [%]; null when none was recorded in the window
+   * @deviates the half-hourly 95th percentiles stand for the samples: a percentile of all samples of the window would need all of them
+   */
+  reference(atMs: number, days: number, percentile: number): number | null {
+    const from = this.#firstAfter(atMs - days * 86_400_000);
+    const to = this.#firstAfter(atMs);
+    return from === to ? null : quantile(Float64Array.from(this.#percent.slice(from, to)), percentile / 100);
+  }
+
+  #firstAfter(ms: number): number {
+    let low = 0;
+    let high = this.#startsMs.length;
+    while (low < high) {
+      const middle = (low + high) >> 1;
+      if (this.#startsMs[middle] <= ms) low = middle + 1;
+      else high = middle;
+    }
+    return low;
+  }
+}
+
+/** Running reference of signal strength for one instant; see `SignalHistory.reference`. */
 export function signalReference(
   reports: readonly IngestReport[],
   atMs: number,
   days: number,
   percentile: number,
 ): number | null {
-  const fromMs = atMs - days * 86_400_000;
-  const values: number[] = [];
-  for (const report of reports) {
-    const factor = report.units.signalStrength === '1' ? 100 : 1;
-    for (const chunk of report.chunks)
-      if (chunk.signalStrengthP95 !== null && chunk.startMs > fromMs && chunk.startMs <= atMs)
-        values.push(chunk.signalStrengthP95 * factor);
-  }
-  return values.length === 0 ? null : quantile(Float64Array.from(values), percentile / 100);
+  return new SignalHistory(reports).reference(atMs, days, percentile);
 }

@@ -53,9 +53,11 @@ interface OpenChunk {
   present: Uint8Array;
   values: Float32Array[];
   status: Int32Array[];
-  intake: Omit<ChunkIntake, 'firstSlot' | 'length' | 'signalStrengthP95'>;
+  intake: Omit<ChunkIntake, 'firstSlot' | 'length' | 'signalStrengthP95' | 'rowsRead'>;
   firstSlot: number;
   lastSlot: number;
+  /** Scans in it. */
+  placed: number;
 }
 
 interface ChannelSource {
@@ -140,7 +142,7 @@ export class Ingest {
   #parts = 0;
   readonly #closedStarts = new Set<number>();
   #coarse: { stepMs: number; groupMs: number; index: number } | null = null;
-  readonly #validCounts: number[] = [];
+  readonly #withoutValue = new Set<ChannelKey>();
   readonly #typical = new Map<ChannelKey, number>();
   #work = new Float64Array(0);
 
@@ -241,7 +243,7 @@ export class Ingest {
     }));
     this.#valueChannels = this.#channels.filter((c) => !statusChannels.includes(c.channel));
     this.#statusChannels = this.#channels.filter((c) => statusChannels.includes(c.channel));
-    for (let i = 0; i < this.#channels.length; i++) this.#validCounts.push(0);
+    for (const { channel } of this.#channels) this.#withoutValue.add(channel);
     const { resolve } = bound.reader;
     this.#parser = new BlockParser({
       delimiter: layout.delimiter,
@@ -285,12 +287,21 @@ export class Ingest {
     const { latestPlausibleMs = Infinity, utcOffsetMinutes } = this.#options;
     const stepMs = this.#stepMs;
     const perMs = 1 / stepMs;
+    const slots = this.#slots;
+    const jumpLimitMs = this.#jumpLimitMs;
     const slotOf = this.#slotOf;
     let chunk: OpenChunk | null = null;
+    let present: Uint8Array = new Uint8Array(0);
     let from = 0;
     let to = 0;
     let runStart = 0;
     let previous = this.#previousMs;
+    let firstMs = this.#firstMs;
+    let lastMs = this.#lastMs;
+    let regularSlots = 0;
+    let regularMs = 0;
+    let readable = 0;
+    let duplicates = 0;
 
     for (let i = 0; i < rows; i++) {
       const time = times[i];
@@ -300,55 +311,58 @@ export class Ingest {
         continue;
       }
       let slot = Math.round((time - from) * perMs);
-      if (chunk === null || time < from || slot >= this.#slots || time >= to) {
+      if (chunk === null || time < from || slot >= slots || time >= to) {
         if (chunk !== null) this.#copyRows(block, chunk, runStart, i);
         runStart = i;
         let startMs = chunkStartMs(time, utcOffsetMinutes);
         slot = Math.round((time - startMs) * perMs);
-        if (slot >= this.#slots) {
+        if (slot >= slots) {
           // Rounds up to the first slot of the next half hour.
           startMs += CHUNK_MS;
           slot = 0;
         }
         chunk = this.#chunkAt(startMs);
+        present = chunk.present;
         from = startMs;
         to = startMs + CHUNK_MS;
       }
-      const { intake } = chunk;
-      intake.rowsRead++;
       const step = time - previous;
       if (step < -0.5 * stepMs) {
-        intake.backwardSteps++;
+        chunk.intake.backwardSteps++;
         this.#backward++;
         this.#firstBackward ??= { line: lines[i], stepMs: step };
-        this.#noteJump(intake, step);
-      } else if (step - stepMs > this.#jumpLimitMs) {
-        intake.clockJumps++;
+        this.#noteJump(chunk.intake, step);
+      } else if (step - stepMs > jumpLimitMs) {
+        chunk.intake.clockJumps++;
         this.#jumps++;
-        this.#noteJump(intake, step);
+        this.#noteJump(chunk.intake, step);
       } else if (step === step) {
-        this.#regularSlots += Math.round(step * perMs);
-        this.#regularMs += step;
+        regularSlots += Math.round(step * perMs);
+        regularMs += step;
       }
       previous = time;
-      if (time < this.#firstMs) this.#firstMs = time;
-      if (time > this.#lastMs) this.#lastMs = time;
+      if (time < firstMs) firstMs = time;
+      if (time > lastMs) lastMs = time;
       if (time > latestPlausibleMs) this.#futureLine ??= lines[i];
+      readable++;
 
-      if (chunk.present[slot] === 1) {
-        intake.duplicates++;
-        this.#duplicates++;
+      if (present[slot] === 1) {
+        duplicates++;
+        chunk.intake.duplicates++;
         slotOf[i] = -1;
       } else {
-        chunk.present[slot] = 1;
+        present[slot] = 1;
         slotOf[i] = slot;
-        if (slot < chunk.firstSlot) chunk.firstSlot = slot;
-        if (slot > chunk.lastSlot) chunk.lastSlot = slot;
       }
-      this.#rows++;
     }
     if (chunk !== null) this.#copyRows(block, chunk, runStart, rows);
     this.#previousMs = previous;
+    this.#firstMs = firstMs;
+    this.#lastMs = lastMs;
+    this.#regularSlots += regularSlots;
+    this.#regularMs += regularMs;
+    this.#rows += readable;
+    this.#duplicates += duplicates;
     return null;
   }
 
@@ -362,25 +376,27 @@ export class Ingest {
     return FIRST_NUMBER_COLUMN + numberFields.indexOf(field);
   }
 
+  /** Rows [from, to) of a block, all of one half hour, into its slots. */
   #copyRows(block: RowBlock, chunk: OpenChunk, from: number, to: number): void {
     const slotOf = this.#slotOf;
-    for (let c = 0; c < this.#valueChannels.length; c++) {
-      const source = block.columns[this.#valueChannels[c].column];
-      const target = chunk.values[c];
-      for (let i = from; i < to; i++) {
-        const slot = slotOf[i];
-        if (slot >= 0) target[slot] = source[i];
-      }
+    let { firstSlot, lastSlot } = chunk;
+    let read = 0;
+    for (let i = from; i < to; i++) {
+      const slot = slotOf[i];
+      if (slot < 0) continue;
+      read++;
+      if (slot < firstSlot) firstSlot = slot;
+      if (slot > lastSlot) lastSlot = slot;
     }
-    for (let c = 0; c < this.#statusChannels.length; c++) {
-      const source = block.columns[this.#statusChannels[c].column];
-      const target = chunk.status[c];
-      for (let i = from; i < to; i++) {
-        const slot = slotOf[i];
-        const code = source[i];
-        if (slot >= 0) target[slot] = code === code ? code | 0 : STATUS_MISSING;
-      }
-    }
+    chunk.firstSlot = firstSlot;
+    chunk.lastSlot = lastSlot;
+    chunk.placed += read;
+    this.#valueChannels.forEach(({ column }, c) =>
+      copyValues(block.columns[column], slotOf, from, to, chunk.values[c]),
+    );
+    this.#statusChannels.forEach(({ column }, c) =>
+      copyCodes(block.columns[column], slotOf, from, to, chunk.status[c]),
+    );
   }
 
   #noteJump(intake: OpenChunk['intake'], step: number): void {
@@ -489,6 +505,7 @@ export class Ingest {
       intake: emptyIntake(startMs),
       firstSlot: this.#slots,
       lastSlot: -1,
+      placed: 0,
     };
     chunk.startMs = startMs;
     chunk.intake = emptyIntake(startMs);
@@ -500,7 +517,8 @@ export class Ingest {
   #close(chunk: OpenChunk): void {
     this.#open.splice(this.#open.indexOf(chunk), 1);
     this.#closedStarts.add(chunk.startMs);
-    const length = chunk.lastSlot - chunk.firstSlot + 1;
+    const length = chunk.placed === 0 ? 0 : chunk.lastSlot - chunk.firstSlot + 1;
+    const rowsRead = chunk.placed + chunk.intake.duplicates;
     if (length > 0) {
       const to = chunk.lastSlot + 1;
       const columns: ChunkColumns = {
@@ -519,13 +537,19 @@ export class Ingest {
       this.#statusChannels.forEach(({ channel }, c) => {
         columns.status[channel] = chunk.status[c].subarray(chunk.firstSlot, to);
       });
-      this.#countValid(columns);
-      const intake: ChunkIntake = { ...chunk.intake, firstSlot: chunk.firstSlot, length, signalStrengthP95 };
+      this.#lookForValues(columns);
+      const intake: ChunkIntake = {
+        ...chunk.intake,
+        rowsRead,
+        firstSlot: chunk.firstSlot,
+        length,
+        signalStrengthP95,
+      };
       this.#intakes.push(intake);
       this.#options.onChunk(columns, intake);
-    } else if (chunk.intake.rowsRead > 0) {
+    } else if (rowsRead > 0) {
       // Only scans that were there already (duplicates of another part): nothing to hand over, but they were read.
-      this.#intakes.push({ ...chunk.intake, firstSlot: 0, length: 0, signalStrengthP95: null });
+      this.#intakes.push({ ...chunk.intake, rowsRead, firstSlot: 0, length: 0, signalStrengthP95: null });
       this.#options.onChunk(
         { firstSlot: 0, length: 0, present: new Uint8Array(0), values: {}, status: {} },
         this.#intakes[this.#intakes.length - 1],
@@ -536,36 +560,36 @@ export class Ingest {
     for (const status of chunk.status) status.fill(STATUS_MISSING);
     chunk.firstSlot = this.#slots;
     chunk.lastSlot = -1;
+    chunk.placed = 0;
     this.#spare.push(chunk);
   }
 
   #percentile95(values: Float32Array): number | null {
     if (this.#work.length < values.length) this.#work = new Float64Array(this.#slots);
+    const work = this.#work;
     let n = 0;
-    for (const value of values) if (value === value) this.#work[n++] = value;
-    return n === 0 ? null : quantileInPlace(this.#work, n, 0.95);
+    for (let i = 0; i < values.length; i++) if (values[i] === values[i]) work[n++] = values[i];
+    return n === 0 ? null : quantileInPlace(work, n, 0.95);
   }
 
-  #countValid(columns: ChunkColumns): void {
-    this.#channels.forEach(({ channel }, c) => {
-      let valid = 0;
-      const values = columns.values[channel];
-      if (values !== undefined) {
-        for (let i = 0; i < values.length; i++) if (values[i] === values[i]) valid++;
-      } else {
-        for (const code of columns.status[channel] ?? []) if (code !== STATUS_MISSING) valid++;
-      }
-      this.#validCounts[c] += valid;
-    });
+  #lookForValues(columns: ChunkColumns): void {
+    for (const { channel } of this.#channels) {
+      if (!this.#withoutValue.has(channel)) continue;
+      const hasValue =
+        columns.values[channel]?.some((value) => value === value) ??
+        columns.status[channel]?.some((code) => code !== STATUS_MISSING);
+      if (hasValue === true) this.#withoutValue.delete(channel);
+    }
   }
 
-  /** Median of the first rows per channel, for doubting units. */
+  /** Median of some of the first rows per channel, for doubting units. */
   #noteTypical(block: RowBlock): void {
+    const stride = Math.max(1, Math.floor(block.rows / 256));
+    const work = new Float64Array(Math.ceil(block.rows / stride));
     for (const { channel, column } of this.#valueChannels) {
       if (this.#typical.has(channel)) continue;
-      const work = new Float64Array(block.rows);
       let n = 0;
-      for (let i = 0; i < block.rows; i++) {
+      for (let i = 0; i < block.rows; i += stride) {
         const value = block.columns[column][i];
         if (value === value) work[n++] = value;
       }
@@ -686,7 +710,7 @@ export class Ingest {
         'unreadable-values',
         `Column ${field + 1} (${this.#nameOf(field)}): ${count(n, 'value')} that ${n === 1 ? 'is' : 'are'} no number, first "${text}" in line ${line}; taken as missing.`,
       );
-    const empty = this.#channels.filter((_, c) => this.#validCounts[c] === 0);
+    const empty = this.#channels.filter((c) => this.#withoutValue.has(c.channel));
     if (empty.length > 0)
       add('all-missing', `Without a single value: ${empty.map((c) => this.#nameOf(c.field)).join(', ')}.`);
     if (this.#backward > 0 && this.#firstBackward !== null)
@@ -783,8 +807,36 @@ export class Ingest {
   }
 }
 
+function copyValues(
+  source: Float64Array,
+  slotOf: Int32Array,
+  from: number,
+  to: number,
+  target: Float32Array,
+): void {
+  for (let i = from; i < to; i++) {
+    const slot = slotOf[i];
+    if (slot >= 0) target[slot] = source[i];
+  }
+}
+
+function copyCodes(
+  source: Float64Array,
+  slotOf: Int32Array,
+  from: number,
+  to: number,
+  target: Int32Array,
+): void {
+  for (let i = from; i < to; i++) {
+    const slot = slotOf[i];
+    const code = source[i];
+    // Codes of 32 bits without sign keep their bits.
+    if (slot >= 0) target[slot] = code === code ? code | 0 : STATUS_MISSING;
+  }
+}
+
 function emptyIntake(startMs: number): OpenChunk['intake'] {
-  return { startMs, rowsRead: 0, duplicates: 0, clockJumps: 0, backwardSteps: 0, largestJumpS: 0 };
+  return { startMs, duplicates: 0, clockJumps: 0, backwardSteps: 0, largestJumpS: 0 };
 }
 
 function roundedRate(rateHz: number): number {

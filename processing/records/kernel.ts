@@ -53,7 +53,6 @@ interface KernelExports {
   badRows(): number;
   badRowsListed(): number;
   rememberPrefix(length: number, base: number, mark: number): void;
-  forgetTimes(): void;
   blankOut(column: number, first: number, sentinel: number): void;
   parseRows(from: number, end: number, isLast: number): number;
 }
@@ -71,6 +70,8 @@ export interface Kernel {
   /** Quadruples line, code, fields, ordinal. */
   bad: Int32Array;
   memory: Uint8Array;
+  resolveTime: ResolveTime;
+  setPlan: (plan: Int32Array, fieldCount: number) => void;
 }
 
 /** Asked for a time or date text that the kernel has not seen just before; milliseconds or NaN. */
@@ -95,21 +96,41 @@ export function latin1(bytes: Uint8Array, from: number, to: number): string {
   return text;
 }
 
+/** Kernels that nobody uses just now. Each has memory of its own, which costs more to make than a small file takes to read. */
+const idle: Kernel[] = [];
+const MOST_IDLE = 2;
+
 /**
- * A kernel of its own with memory for one block. Memory is laid out once and never grows, so views stay valid.
+ * A kernel with memory for one block, for one file. Memory is laid out once and never grows, so views stay valid.
  *
- * @param plan action per field, see `fieldAction`
+ * @param plan action per field, see `fieldAction`; at most MAX_FIELDS
  * @param fieldCount number of fields a good row has
  * @param columnCount columns in all, including the two time columns
  * @param rowsPerBlock rows a block holds
  */
-export function createKernel(
+export function takeKernel(
   plan: Int32Array,
   fieldCount: number,
   columnCount: number,
   rowsPerBlock: number,
   resolveTime: ResolveTime,
 ): Kernel {
+  const at = idle.findIndex((k) => k.columns.length === columnCount && k.lines.length === rowsPerBlock);
+  const kernel = at === -1 ? createKernel(columnCount, rowsPerBlock) : idle.splice(at, 1)[0];
+  kernel.resolveTime = resolveTime;
+  kernel.setPlan(plan, fieldCount);
+  return kernel;
+}
+
+/** Gives a kernel back; its views must not be used any more. */
+export function returnKernel(kernel: Kernel): void {
+  kernel.resolveTime = unbound;
+  if (idle.length < MOST_IDLE) idle.push(kernel);
+}
+
+const unbound: ResolveTime = () => NaN;
+
+function createKernel(columnCount: number, rowsPerBlock: number): Kernel {
   let size = 4096;
   const reserve = (bytes: number): number => {
     const pointer = size;
@@ -122,7 +143,7 @@ export function createKernel(
   const index = reserve((WINDOW_BYTES + 64) * 4);
   const rowEnds = reserve((WINDOW_BYTES + 64) * 4);
   const cache = reserve(64);
-  const planPointer = reserve(Math.max(1, plan.length) * 4);
+  const planPointer = reserve(MAX_FIELDS * 4);
   const odd = reserve(ODD_CAPACITY * 16);
   const bad = reserve(BAD_CAPACITY * 16);
   const lines = reserve(rowsPerBlock * 4);
@@ -138,11 +159,10 @@ export function createKernel(
     env: { memory },
     host: {
       resolveTime: (which: number, pointer: number, length: number): number =>
-        resolveTime(which === 0 ? 'date' : 'time', latin1(bytes, pointer, pointer + length), exports),
+        kernel.resolveTime(which === 0 ? 'date' : 'time', latin1(bytes, pointer, pointer + length), exports),
     },
   });
   const exports = instance.exports as unknown as KernelExports;
-  new Int32Array(memory.buffer, planPointer, plan.length).set(plan);
   exports.setMemory(
     ...([
       shuffle,
@@ -158,8 +178,7 @@ export function createKernel(
     ] as const),
     ...([cache, index, rowEnds, constants] as const),
   );
-  exports.setPlan(planPointer, plan.length, fieldCount);
-  return {
+  const kernel: Kernel = {
     exports,
     text: new Uint8Array(memory.buffer, textPointer, textBytes + TEXT_PADDING),
     textPointer,
@@ -172,5 +191,11 @@ export function createKernel(
     odd: new Int32Array(memory.buffer, odd, ODD_CAPACITY * 4),
     bad: new Int32Array(memory.buffer, bad, BAD_CAPACITY * 4),
     memory: bytes,
+    resolveTime: unbound,
+    setPlan: (plan, fieldCount) => {
+      new Int32Array(memory.buffer, planPointer, plan.length).set(plan);
+      exports.setPlan(planPointer, plan.length, fieldCount);
+    },
   };
+  return kernel;
 }

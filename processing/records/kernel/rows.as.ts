@@ -161,7 +161,6 @@ export function setMemory(
   for (let length = 0; length <= 16; length++)
     for (let lane = 0; lane < 16; lane++)
       store<u8>(constants + LANE_MASKS + <usize>((length << 4) + lane), lane >= 16 - length ? 255 : 0);
-  forgetForms();
 }
 
 /** Column forms: 0 decimals that tokens usually have (−1: no mark) · 4 windows still to read token by token. */
@@ -179,6 +178,9 @@ export function start(firstLine: i32): void {
   oddCount = 0;
   badCount = 0;
   badListed = 0;
+  timePrefixLength = 0;
+  dateLength = -1;
+  forgetForms();
 }
 
 export function nextBlock(): void {
@@ -365,11 +367,6 @@ export function rememberPrefix(length: i32, base: f64, markByte: i32): void {
   timePrefixMask = length >= 32 ? -1 : (1 << length) - 1;
   timeBase = base;
   timeMark = <u8>markByte;
-}
-
-export function forgetTimes(): void {
-  timePrefixLength = 0;
-  dateLength = -1;
 }
 
 @inline
