@@ -126,6 +126,7 @@ CREATE TABLE "raw_files" (
 	"state" text NOT NULL,
 	"layout_id" uuid NOT NULL,
 	"read_with_layout_hash" text,
+	"chunk_folder" text,
 	"report" jsonb,
 	"rows" bigint,
 	"bad_rows" bigint,

@@ -17,7 +17,11 @@ function start() {
   child = spawn(process.execPath, ['--enable-source-maps', join(root, 'dist', 'server', 'main.mjs')], {
     cwd: root,
     stdio: 'inherit',
-    env: { GUSTBOOK_DEV_ORIGIN: 'http://localhost:8081', GUSTBOOK_LOG_FILE: '.gustbook/server.log', ...process.env },
+    env: {
+      GUSTBOOK_DEV_ORIGIN: 'http://localhost:8081',
+      GUSTBOOK_LOG_FILE: '.gustbook/server.log',
+      ...process.env,
+    },
   });
 }
 

@@ -22,6 +22,7 @@ const columns = {
   state: rawFiles.state,
   layoutId: rawFiles.layoutId,
   readWithLayoutHash: rawFiles.readWithLayoutHash,
+  chunkFolder: rawFiles.chunkFolder,
   report: rawFiles.report,
   rows: rawFiles.rows,
   badRows: rawFiles.badRows,

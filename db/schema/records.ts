@@ -118,6 +118,8 @@ export const rawFiles = pgTable(
       .references(() => layoutRevisions.id),
     /** Hash of the layout its chunks were made with; null while there are none. */
     readWithLayoutHash: text('read_with_layout_hash'),
+    /** Name of the folder that holds them; every reading makes one of its own. */
+    chunkFolder: text('chunk_folder'),
     report: jsonb('report').$type<unknown>(),
     rows: bigint('rows', { mode: 'number' }),
     badRows: bigint('bad_rows', { mode: 'number' }),

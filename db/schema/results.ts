@@ -90,6 +90,7 @@ export const periods = pgTable(
     reasons: jsonb('reasons').$type<unknown>().notNull(),
     ledger: jsonb('ledger').$type<unknown>().notNull(),
     curves: jsonb('curves').$type<unknown>().notNull(),
+    /** Content hashes of the raw files that hold scans of it. */
     rawFiles: jsonb('raw_files').$type<string[]>().notNull(),
     /** SHA-256 of the canonical text of the whole result. */
     hash: text('hash').notNull(),

@@ -1,4 +1,6 @@
-import { countUnread, rawFilesOf } from '../../db/queries/raw-files';
+import { access, rm } from 'node:fs/promises';
+import { join } from 'node:path';
+import { countUnread, rawFilesOf, updateRawFile } from '../../db/queries/raw-files';
 import {
   dropOtherPeriods,
   finishedStarts,
@@ -13,9 +15,13 @@ import type { RunRow } from '../../db/queries/runs';
 import { setUpsOf, stationBySystem } from '../../db/queries/stations';
 import type { StationRow } from '../../db/queries/stations';
 import { contentHash } from '../../processing/canonical';
-import { comparePrecedence } from '../../processing/chunks/precedence';
+import { inputManifest, planRun } from '../../processing/run-plan';
+import type { InputManifest, RunPlan } from '../../processing/run-plan';
+import type { RecipeSettings } from '../../processing/schemas/recipe';
+import type { SetUp } from '../../processing/schemas/set-up';
 import { fluxKeys } from '../../processing/state';
 import type { FluxKey, PeriodResult } from '../../processing/state';
+import type { FileInFolder } from '../../workers/node/pool';
 import type { Run } from '../contract/api';
 import type { Deps } from '../deps';
 import { softwareVersion } from '../paths';
@@ -30,19 +36,9 @@ import {
 } from '../services/documents';
 import { packRun } from '../services/packed-columns';
 import { recipeOf } from '../services/recipes';
-import {
-  effectiveSetUps,
-  filesInUse,
-  lookAround,
-  manifestHash,
-  reaches,
-  recordedSpan,
-  setUpsWithin,
-  wholePeriods,
-} from '../services/run-manifest';
-import type { RunManifest } from '../services/run-manifest';
+import { effectiveSetUps, filesInUse, lookAround, reaches, setUpsWithin } from '../services/run-manifest';
 import { publishRun } from '../services/runs';
-import type { ComputeRequest, Engine } from './engine';
+import type { Engine } from './engine';
 
 /** Periods written by one statement, and how long one may wait for company. */
 const WRITE_AT_ONCE = 8;
@@ -94,111 +90,144 @@ async function advance(deps: Deps, engine: Engine, run: RunRow, signal: AbortSig
   }
   const station = await stationBySystem(db, run.systemId);
   if (station === null) return;
-  const plan = await planRun(deps, run, station);
-  if (plan === null) {
+  const { plan, manifest, settings, problem } = await planOf(deps, run, station);
+  const periods = plan.periods.filter((period) => period.kind !== 'no-set-up');
+  if (plan.files.length === 0 || periods.length === 0) {
     return endAs(deps, run.id, {
       state: 'failed',
       problem:
-        'Nothing is recorded in the span of this run, so there was nothing to compute. Choose another span, or look at the raw files that could not be read.',
+        problem ??
+        (plan.periods.length > 0
+          ? 'No set-up holds in the span of this run, so nothing was computed. Add a set-up that begins before the records.'
+          : 'Nothing is recorded in the span of this run, so there was nothing to compute. Choose another span, or look at the raw files that could not be read.'),
     });
   }
-  const hash = manifestHash(plan.manifest);
+  if (await readAgainWhereMissing(deps, run, plan.files)) return;
+  const hash = contentHash(manifest);
   await dropOtherPeriods(db, run.id, hash);
   const done = new Set(await finishedStarts(db, run.id, hash));
   const isMine = await updateRunIn(db, run.id, working, {
     state: 'computing',
-    manifest: plan.manifest,
+    manifest,
     manifestHash: hash,
     softwareVersion,
-    fromMs: plan.manifest.fromMs,
-    toMs: plan.manifest.toMs,
-    periodsTotal: plan.request.startsMs.length,
+    fromMs: plan.fromMs,
+    toMs: plan.toMs,
+    periodsTotal: periods.length,
     periodsDone: done.size,
+    problem,
   });
   if (!isMine) return;
   await publishRun(deps, run.id);
-  const startsMs = plan.request.startsMs.filter((startMs) => !done.has(startMs));
-  if (startsMs.length > 0) {
+  const left = periods.filter(({ startMs }) => !done.has(startMs));
+  if (left.length > 0) {
     const writer = new PeriodWriter(deps, run, station.slug, hash, done.size);
-    await engine
-      .computePeriods({ ...plan.request, startsMs }, (result) => writer.add(result), signal)
-      .then(
-        () => writer.finish(),
-        async (cause) => {
-          // What is computed is kept; the failure is told all the same.
-          await writer.finish();
-          throw cause;
-        },
-      );
+    try {
+      await engine.computePlanned(left, settings, (result) => writer.add(result), signal);
+    } catch (cause) {
+      // What is computed is kept; the failure is told all the same.
+      await writer.finish();
+      await dropDamaged(deps, cause, plan.files);
+      throw cause;
+    }
+    await writer.finish();
   }
   signal.throwIfAborted();
   await sumUp(deps, run.id);
 }
 
-/** What the run depends on, now; null when nothing is recorded in its span. */
-async function planRun(
+interface PlannedFile extends FileInFolder {
+  id: string;
+  fileName: string;
+}
+
+/** What the run depends on and consists of, now. */
+async function planOf(
   deps: Deps,
   run: RunRow,
   station: StationRow,
-): Promise<{ manifest: RunManifest; request: ComputeRequest } | null> {
+): Promise<{
+  plan: RunPlan<PlannedFile>;
+  manifest: InputManifest;
+  settings: RecipeSettings;
+  problem: string | null;
+}> {
   const { settings } = recipeDocument(await recipeOf(deps.db, run.groupId, run.recipeHash));
-  const { utcOffsetMinutes } = stationDocument(station);
-  const inUse = filesInUse(await rawFilesOf(deps.db, run.systemId));
-  const recorded = recordedSpan(inUse, inUse.map(reportDocument));
-  if (recorded === null) return null;
-  const { fromMs, toMs, startsMs } = wholePeriods(
-    run.askedFromMs ?? recorded.fromMs,
-    run.askedToMs ?? recorded.toMs,
-    settings.averaging.minutes,
-    utcOffsetMinutes,
-  );
-  if (startsMs.length === 0 || !inUse.some((file) => reaches(file, fromMs, toMs))) return null;
   const { backMs, aheadMs } = lookAround(settings);
+  const inUse = filesInUse(await rawFilesOf(deps.db, run.systemId));
   const files = inUse
-    .filter((file) => reaches(file, fromMs - backMs, toMs + aheadMs))
-    .sort((a, b) => comparePrecedence(reportDocument(a)!, reportDocument(b)!));
-  const setUps = setUpsWithin(effectiveSetUps(await setUpsOf(deps.db, run.systemId)), fromMs, toMs);
+    .filter((file) =>
+      reaches(file, (run.askedFromMs ?? -Infinity) - backMs, (run.askedToMs ?? Infinity) + aheadMs),
+    )
+    .map((file) => ({
+      id: file.id,
+      fileName: file.fileName,
+      layout: layoutDocument(file),
+      report: reportDocument(file)!,
+      chunkFolder: chunkFolder(deps.config.dataFolder, file.id, file.chunkFolder ?? 'none'),
+    }));
+  const request = {
+    files,
+    setUps: [] as { validFromMs: number; setUp: SetUp }[],
+    settings,
+    utcOffsetMinutes: stationDocument(station).utcOffsetMinutes,
+    fromMs: run.askedFromMs ?? undefined,
+    toMs: run.askedToMs ?? undefined,
+  };
+  // The span is known only when all files are; set-ups that do not touch it are no part of the run.
+  const effective = effectiveSetUps(await setUpsOf(deps.db, run.systemId));
+  const { fromMs, toMs } = planRun(request);
+  request.setUps = setUpsWithin(effective, fromMs, toMs).map((row) => ({
+    validFromMs: row.validFromMs,
+    setUp: setUpDocument(row),
+  }));
+  const plan = planRun(request);
+  const names = new Map(files.map((file) => [file.report.contentHash, file.fileName]));
+  const excluded = plan.problems.filter((problem) => problem.isExcluded);
   return {
-    manifest: {
-      schema: 'gustbook/manifest/1',
-      softwareVersion,
-      recipeHash: run.recipeHash,
-      utcOffsetMinutes,
-      fromMs,
-      toMs,
-      rawFiles: files.map((file) => ({
-        contentHash: file.contentHash,
-        layoutHash: file.readWithLayoutHash as string,
-      })),
-      setUps: setUps.map(({ hash, validFromMs }) => ({ hash, validFromMs })),
-    },
-    request: {
-      files: files.map((file) => ({
-        id: file.id,
-        contentHash: file.contentHash,
-        layoutHash: file.readWithLayoutHash as string,
-        layout: layoutDocument(file),
-        report: reportDocument(file)!,
-        chunkFolder: chunkFolder(deps.config.dataFolder, file.id, file.readWithLayoutHash as string),
-      })),
-      setUps: setUps.map((row) => ({
-        hash: row.hash,
-        validFromMs: row.validFromMs,
-        setUp: setUpDocument(row),
-      })),
-      settings,
-      utcOffsetMinutes,
-      fromMs,
-      toMs,
-      startsMs,
-    },
+    plan,
+    manifest: inputManifest(request, plan, softwareVersion),
+    settings,
+    problem:
+      excluded.length === 0
+        ? null
+        : excluded.map(({ contentHash: hash, message }) => `${names.get(hash)}: ${message}`).join(' '),
   };
 }
 
-/** Identity of a period's result: the hash of all of it but the ids of raw files, which differ from one bench to the next. */
-export function periodHash(result: PeriodResult): string {
-  const { rawFiles: _ids, ...rest } = result;
-  return contentHash(rest);
+/**
+ * Chunks can be made anew from the raw files: where some are missing, their files are read again and the run waits for them.
+ *
+ * @returns whether the run has to wait
+ */
+async function readAgainWhereMissing(
+  deps: Deps,
+  run: RunRow,
+  files: readonly PlannedFile[],
+): Promise<boolean> {
+  const missing: PlannedFile[] = [];
+  for (const file of files) {
+    const isThere = await access(join(file.chunkFolder, 'index.json')).then(
+      () => true,
+      () => false,
+    );
+    if (!isThere) missing.push(file);
+  }
+  for (const { id } of missing) await updateRawFile(deps.db, id, { state: 'stored' });
+  if (missing.length > 0) await updateRunIn(deps.db, run.id, working, { state: 'reading' });
+  for (const { id } of missing) await deps.jobs.readRawFile(id);
+  if (missing.length > 0) await publishRun(deps, run.id);
+  return missing.length > 0;
+}
+
+/** Removes chunks that a thread found damaged, so that the next try reads their file again. */
+async function dropDamaged(deps: Deps, cause: unknown, files: readonly PlannedFile[]): Promise<void> {
+  const message = cause instanceof Error ? cause.message : '';
+  for (const file of files) {
+    if (!message.includes(file.chunkFolder)) continue;
+    deps.log.warn({ folder: file.chunkFolder }, 'damaged chunks; the raw file will be read again');
+    await rm(file.chunkFolder, { recursive: true, force: true });
+  }
 }
 
 function mainFindings(result: PeriodResult): Record<FluxKey, string | null> {
@@ -260,7 +289,7 @@ class PeriodWriter {
       ledger: result.ledger,
       curves: result.curves,
       rawFiles: result.rawFiles,
-      hash: periodHash(result),
+      hash: contentHash(result),
     }));
     await upsertPeriods(db, rows);
     this.done += rows.length;
@@ -308,6 +337,5 @@ async function sumUp(deps: Deps, runId: string): Promise<void> {
     periodsDone: hashes.length,
     grades,
     resultHash: contentHash(hashes.map(({ startMs, hash }) => [startMs, hash])),
-    problem: null,
   });
 }

@@ -1,4 +1,4 @@
-import { rm } from 'node:fs/promises';
+import { randomUUID } from 'node:crypto';
 import { countUnread, rawFileById, updateRawFile } from '../../db/queries/raw-files';
 import type { RawFileRow } from '../../db/queries/raw-files';
 import { insertRun } from '../../db/queries/runs';
@@ -8,7 +8,7 @@ import type { Deps } from '../deps';
 import { derivedId } from '../ids';
 import { softwareVersion } from '../paths';
 import { presentRawFile } from '../presenters/present';
-import { chunkFolder, dropDerived } from '../services/derived-files';
+import { chunkFolder, dropDerived, dropOtherReadings } from '../services/derived-files';
 import { layoutDocument, stationDocument } from '../services/documents';
 import { resumeRuns } from '../services/runs';
 import type { Engine } from './engine';
@@ -41,24 +41,27 @@ export async function readRawFile(
   const reading = { ...row, state: 'reading' };
   publish(reading, 0);
   let lastMs = Date.now();
-  const outFolder = chunkFolder(deps.config.dataFolder, rawFileId, row.layoutHash);
-  let outcome: Awaited<ReturnType<Engine['readRawFile']>>;
+  // A folder of its own: a run may be reading the chunks of the last reading.
+  const folderName = randomUUID();
+  let outcome: Awaited<ReturnType<Engine['ingestFile']>>;
   try {
-    outcome = await engine.readRawFile(
+    outcome = await engine.ingestFile(
       {
         path: deps.storage.path(row.sha256),
         fileName: row.fileName,
         layout: layoutDocument(row),
         utcOffsetMinutes: stationDocument(station).utcOffsetMinutes,
-        outFolder,
+        outFolder: chunkFolder(deps.config.dataFolder, rawFileId, folderName),
       },
-      (share) => {
-        const nowMs = Date.now();
-        if (nowMs - lastMs < PROGRESS_EVERY_MS) return;
-        lastMs = nowMs;
-        publish(reading, share);
+      {
+        signal,
+        onProgress: (share) => {
+          const nowMs = Date.now();
+          if (nowMs - lastMs < PROGRESS_EVERY_MS) return;
+          lastMs = nowMs;
+          publish(reading, share);
+        },
       },
-      signal,
     );
   } catch (cause) {
     if (signal.aborted || !isLastTry) throw cause;
@@ -73,11 +76,10 @@ export async function readRawFile(
     return;
   }
   if ('problem' in outcome) {
-    await rm(outFolder, { recursive: true, force: true });
     await finish(deps, row, unreadable(outcome.problem.userMessage));
     return;
   }
-  await finish(deps, row, read(outcome.report, row.layoutHash));
+  await finish(deps, row, read(outcome.report, row.layoutHash, folderName));
 }
 
 function unreadable(problem: string): Parameters<typeof updateRawFile>[2] {
@@ -86,6 +88,7 @@ function unreadable(problem: string): Parameters<typeof updateRawFile>[2] {
     problem,
     report: null,
     readWithLayoutHash: null,
+    chunkFolder: null,
     rows: null,
     badRows: null,
     firstScanMs: null,
@@ -93,12 +96,17 @@ function unreadable(problem: string): Parameters<typeof updateRawFile>[2] {
   };
 }
 
-function read(report: IngestReport, layoutHash: string): Parameters<typeof updateRawFile>[2] {
+function read(
+  report: IngestReport,
+  layoutHash: string,
+  folderName: string,
+): Parameters<typeof updateRawFile>[2] {
   return {
     state: 'read',
     problem: null,
     report,
     readWithLayoutHash: layoutHash,
+    chunkFolder: folderName,
     rows: report.rows,
     badRows: report.badRows,
     firstScanMs: report.firstScanMs,
@@ -122,6 +130,7 @@ async function finish(
     return;
   }
   await updateRawFile(deps.db, row.id, change);
+  await dropOtherReadings(deps.config.dataFolder, row.id, change.chunkFolder ?? null);
   const current = await rawFileById(deps.db, row.id);
   const station = await stationBySystem(deps.db, row.systemId);
   if (current !== null && station !== null) {

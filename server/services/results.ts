@@ -109,7 +109,7 @@ export async function periodOf(
   const row = await periodAt(deps.db, run.id, startMs);
   if (row === null) throw notFound('period');
   const used = new Set(row.rawFiles);
-  const files = (await rawFilesOf(deps.db, run.systemId)).filter((file) => used.has(file.id));
+  const files = (await rawFilesOf(deps.db, run.systemId)).filter((file) => used.has(file.contentHash));
   return {
     row,
     rawFiles: files.map((file) => ({ id: file.id, fileName: file.fileName })),

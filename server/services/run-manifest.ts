@@ -1,30 +1,6 @@
 import type { RawFileRow } from '../../db/queries/raw-files';
 import type { SetUpRow } from '../../db/queries/stations';
-import { contentHash } from '../../processing/canonical';
-import type { IngestReport } from '../../processing/chunks/chunk';
 import type { RecipeSettings } from '../../processing/schemas/recipe';
-
-/**
- * All that a run's numbers depend on, by hash. Two runs with the same manifest and recipe, computed by the same software version, have
- * the same result.
- */
-export interface RunManifest {
-  schema: 'gustbook/manifest/1';
-  softwareVersion: string;
-  recipeHash: string;
-  utcOffsetMinutes: number;
-  /** Whole periods, ms UTC, half-open. */
-  fromMs: number;
-  toMs: number;
-  /** In order of precedence: where two hold the same instant, the first wins. */
-  rawFiles: { contentHash: string; layoutHash: string }[];
-  /** In the order of their dates. */
-  setUps: { hash: string; validFromMs: number }[];
-}
-
-export function manifestHash(manifest: RunManifest): string {
-  return contentHash(manifest);
-}
 
 /**
  * The set-ups that hold: of revisions with the same date the newest, ordered by date.
@@ -92,38 +68,12 @@ export function lookAround(settings: RecipeSettings): { backMs: number; aheadMs:
 }
 
 /** Does a read file hold scans in [fromMs, toMs)? */
-export function reaches(row: Pick<UsableFile, 'firstScanMs' | 'lastScanMs'>, fromMs: number, toMs: number): boolean {
-  return row.firstScanMs !== null && row.lastScanMs !== null && row.firstScanMs < toMs && row.lastScanMs >= fromMs;
-}
-
-/** Averaging periods are counted from midnight of station standard time. */
-export function wholePeriods(
+export function reaches(
+  row: Pick<UsableFile, 'firstScanMs' | 'lastScanMs'>,
   fromMs: number,
   toMs: number,
-  minutes: number,
-  utcOffsetMinutes: number,
-): { fromMs: number; toMs: number; startsMs: number[] } {
-  const span = minutes * 60_000;
-  const offset = utcOffsetMinutes * 60_000;
-  const first = Math.floor((fromMs + offset) / span) * span - offset;
-  const end = Math.ceil((toMs + offset) / span) * span - offset;
-  const startsMs: number[] = [];
-  for (let at = first; at < end; at += span) startsMs.push(at);
-  return { fromMs: first, toMs: end, startsMs };
-}
-
-/** Span of a set of files: from the first scan to just behind the last. */
-export function recordedSpan(
-  rows: UsableFile[],
-  reports: (IngestReport | null)[],
-): { fromMs: number; toMs: number } | null {
-  let fromMs = Infinity;
-  let toMs = -Infinity;
-  rows.forEach((row, k) => {
-    if (row.firstScanMs === null || row.lastScanMs === null) return;
-    fromMs = Math.min(fromMs, row.firstScanMs);
-    const rate = reports[k]?.sampleRateHz;
-    toMs = Math.max(toMs, row.lastScanMs + (rate ? 1000 / rate : 1));
-  });
-  return fromMs < toMs ? { fromMs, toMs } : null;
+): boolean {
+  return (
+    row.firstScanMs !== null && row.lastScanMs !== null && row.firstScanMs < toMs && row.lastScanMs >= fromMs
+  );
 }

@@ -32,7 +32,11 @@ const were = (files: string[]) => (files.length === 1 ? 'was' : 'were');
  *
  * @param around how far outside its span the run's recipe looks [ms]
  */
-export function staleReasons(run: RunRow, inputs: SystemInputs, around: { backMs: number; aheadMs: number }): string[] {
+export function staleReasons(
+  run: RunRow,
+  inputs: SystemInputs,
+  around: { backMs: number; aheadMs: number },
+): string[] {
   const manifest = manifestDocument(run);
   if (manifest === null || !['done', 'failed', 'cancelled'].includes(run.state)) return [];
   const { fromMs, toMs, utcOffsetMinutes } = manifest;

@@ -44,7 +44,7 @@ function lines(count: number): Buffer {
 async function bring(
   bytes: Buffer,
   name = 'rows.csv',
-  id = randomUUID(),
+  id: string = randomUUID(),
 ): Promise<{ status: number; body: Uploaded }> {
   const answer = await bench.upload(technician, address, { id, layoutId: place.layoutId, name, bytes });
   expect([200, 201]).toContain(answer.status);

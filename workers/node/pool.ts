@@ -24,6 +24,8 @@ export interface FileInFolder extends PlanFile {
 export interface PoolOptions {
   /** Heap of one thread [MiB]; a task that needs more fails alone. */
   maxOldGenerationSizeMb?: number;
+  /** Bundled worker to run instead of the one beside this code: some test runners cannot start TypeScript threads. */
+  workerFile?: string;
 }
 
 export interface WorkerPool {
@@ -62,7 +64,7 @@ function workerEntry(): { filename: string; execArgv: string[] } {
 export function createPool(threads: number, options: PoolOptions = {}): WorkerPool {
   const { maxOldGenerationSizeMb = 256 } = options;
   const piscina = new Piscina({
-    ...workerEntry(),
+    ...(options.workerFile === undefined ? workerEntry() : { filename: options.workerFile }),
     minThreads: threads,
     maxThreads: threads,
     idleTimeout: Infinity,
