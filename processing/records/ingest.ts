@@ -432,7 +432,7 @@ export class Ingest {
       if (step === 0) still++;
       else if (step > 0 && steps.length < 200) steps.push(step);
     }
-    if (still < rows / 2 || steps.length < 3) return;
+    if (still < 0.4 * rows || steps.length < 3) return;
     const stepMs = steps.sort((a, b) => a - b)[steps.length >> 1];
     const scansAStep = stepMs / this.#stepMs;
     // As many scans stand on one stamp as the rate says?
@@ -466,13 +466,24 @@ export class Ingest {
     const times = this.#times;
     const span = Math.max(1, Math.min(Math.round(2 * layout.sampleRateHz), Math.floor(rows / 4)));
     const spans: number[] = [];
-    for (let i = span; i < rows; i += span) {
-      const step = (times[i] - times[i - span]) / span;
+    const steps: number[] = [];
+    let moves = 0;
+    for (let i = 1, first = 0; i < rows; i++) {
+      // Scans given twice do not make the rate higher.
+      if (times[i] !== times[i - 1]) moves++;
+      if (times[i] > times[i - 1] && steps.length < 2000) steps.push(times[i] - times[i - 1]);
+      if (i - first < span) continue;
+      const step = (times[i] - times[first]) / moves;
       if (step > 0) spans.push(step);
+      first = i;
+      moves = 0;
     }
     if (spans.length < 3) return null;
     const rateHz = 1000 / spans.sort((a, b) => a - b)[spans.length >> 1];
     if (Math.abs(rateHz / layout.sampleRateHz - 1) <= RATE_ERROR) return null;
+    // Many lost rows make spans longer, but leave short steps of the right length.
+    const shortStep = steps.sort((a, b) => a - b)[steps.length >> 2];
+    if (Math.abs(shortStep / this.#stepMs - 1) <= RATE_ERROR) return null;
     if (this.#blocks === 0) return this.#rateError(rateHz, lines[0]);
     this.#rowsAtOtherRate += rows;
     this.#otherRate ??= { line: lines[0], rateHz };

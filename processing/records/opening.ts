@@ -143,23 +143,29 @@ export function openText(
   }
 
   const needed = highestField(layout) + 1;
-  const fieldCount = [...counts].sort(
-    (a, b) => b[1] - a[1] || Number(b[0] >= needed) - Number(a[0] >= needed),
-  )[0][0];
-  if (fieldCount > MAX_FIELDS) return tooManyColumns(headerLines.length + 1);
+  const byCount = [...counts].sort((a, b) => b[1] - a[1]);
+  // The most frequent number of columns that can hold what the layout needs, unless it is a rarity.
+  const sampled = byCount.reduce((sum, [, n]) => sum + n, 0);
+  const fitting = byCount.find(([fields, n]) => fields >= needed && n >= 0.05 * sampled);
+  const fieldCount = (fitting ?? byCount[0])[0];
+  const line = headerLines.length + 1;
+  if (fieldCount > MAX_FIELDS) return tooManyColumns(line);
   if (fieldCount === 1 && needed > 1) {
+    const { delimiter, quoted } = layout;
     const others = (Object.keys(delimiterNames) as DelimiterName[])
-      .filter((name) => name !== layout.delimiter)
-      .map((name) => ({ name, fields: countFields(samples[0], name, layout.quoted) }))
-      .sort((a, b) => b.fields - a.fields);
+      .filter((name) => name !== delimiter)
+      .map((name) => ({ name, fields: countFields(samples[0], name, quoted) }))
+      // Blanks stand inside stamps too: they come last.
+      .sort((a, b) => Number(a.name === 'blanks') - Number(b.name === 'blanks') || b.fields - a.fields);
+    const likely = others.find(({ fields }) => fields > 1);
     const hint =
-      others[0].fields > 1
-        ? ` Split at ${delimiterNames[others[0].name]}, the first row has ${others[0].fields}.`
-        : '';
+      likely === undefined
+        ? ''
+        : ` Split at ${delimiterNames[likely.name]}, the first row has ${likely.fields}.`;
     return new RecordError('wrong-delimiter', {
-      message: `rows have one field when split at ${delimiterNames[layout.delimiter]}`,
-      userMessage: `Split at ${delimiterNames[layout.delimiter]}, as the layout says, every row has only one column.${hint} The file was kept as it is. Correct the delimiter in the layout, then read the file again.`,
-      line: headerLines.length + 1,
+      message: `rows have one field when split at ${delimiterNames[delimiter]}`,
+      userMessage: `Split at ${delimiterNames[delimiter]}, as the layout says, every row has only one column.${hint} The file was kept as it is. Correct the delimiter in the layout, then read the file again.`,
+      line,
     });
   }
   if (fieldCount < needed) {
@@ -170,9 +176,18 @@ export function openText(
     return new RecordError('wrong-columns', {
       message: `layout needs ${needed} fields, rows have ${fieldCount}`,
       userMessage: `The layout looks for ${what}, but the rows have ${fieldCount} columns. The file was kept as it is. Choose the layout that fits this file, or correct the column numbers.`,
-      line: headerLines.length + 1,
+      line,
     });
   }
+  const names = layout.nameRow === null ? undefined : headerLines[layout.nameRow];
+  const named = names === undefined ? fieldCount : countFields(names, layout.delimiter, layout.quoted);
+  // One value too many is a delimiter at the end of each row; more than that, and no value stands below its name.
+  if (named > 1 && fieldCount > named + 1)
+    return new RecordError('wrong-columns', {
+      message: `${named} names, ${fieldCount} fields`,
+      userMessage: `The header names ${named} columns, but the rows have ${fieldCount} when split at ${delimiterNames[layout.delimiter]}. Perhaps decimals are written with the same mark. The file was kept as it is. Correct delimiter and decimal mark in the layout.`,
+      line,
+    });
   return { bodyOffset, newline, headerLines, fieldCount };
 }
 
