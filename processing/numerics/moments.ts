@@ -111,6 +111,44 @@ export function moments(values: Float64Array, from = 0, to = values.length): Mom
   };
 }
 
+/** Number, mean and variance, where shape and extremes are not asked for. */
+export interface MeanVariance {
+  n: number;
+  /** NaN when there is no valid value. */
+  mean: number;
+  variance: number;
+  /** The values differ by no more than rounding; the variance is then 0. */
+  isConstant: boolean;
+}
+
+/**
+ * Mean and variance of one series; the same numbers as `moments` gives.
+ *
+ * @param values Float64Array, not mutated; NaN = missing
+ * @param near mean of the series if it is known, which saves a pass
+ * @returns population moments; NaN when no value is valid
+ * @assumes finite values or NaN
+ * @reference definitions, as `moments`
+ * @deviates none
+ */
+export function meanVariance(values: Float64Array, near = mean(values)): MeanVariance {
+  let n = 0;
+  let d1 = 0;
+  let d2 = 0;
+  for (let i = 0; i < values.length; i++) {
+    const d = values[i] - near;
+    if (d !== d) continue;
+    n++;
+    d1 += d;
+    d2 += d * d;
+  }
+  if (n === 0) return { n, mean: NaN, variance: NaN, isConstant: false };
+  const shift = d1 / n;
+  const variance = Math.max(0, d2 / n - shift * shift);
+  const isConstant = isConstantSignal(variance, near + shift);
+  return { n, mean: near + shift, variance: isConstant ? 0 : variance, isConstant };
+}
+
 /**
  * Mean of the valid values.
  *
@@ -187,6 +225,7 @@ export function mergeMoments(a: PartialMoments, b: PartialMoments): PartialMomen
  * @param x,y Float64Array of the same length, not mutated; NaN = missing
  * @param from first index, @param to one past the last
  * @param lag y is read at index + lag: a positive lag pairs x with a y recorded later; pairs that leave [from, to) are left out
+ * @param near means of the series if they are known: values near those of the pairs, which saves a pass
  * @returns pair count, means, and sums of squares and products about those means; means NaN when there is no pair
  * @assumes finite values or NaN
  * @reference definition
@@ -198,29 +237,34 @@ export function pairMoments(
   from = 0,
   to = Math.min(x.length, y.length),
   lag = 0,
+  near?: { x: number; y: number },
 ): PartialMoments {
   const first = Math.max(from, from - lag);
   const last = Math.min(to, to - lag);
-  let n = 0;
-  let sumX = 0;
-  let sumY = 0;
-  let originX = NaN;
-  let originY = NaN;
-  for (let i = first; i < last; i++) {
-    const a = x[i];
-    const b = y[i + lag];
-    if (a !== a || b !== b) continue;
-    if (n === 0) {
-      originX = a;
-      originY = b;
+  let roughX = near ? near.x : NaN;
+  let roughY = near ? near.y : NaN;
+  if (roughX !== roughX || roughY !== roughY) {
+    let pairs = 0;
+    let sumX = 0;
+    let sumY = 0;
+    let originX = NaN;
+    let originY = NaN;
+    for (let i = first; i < last; i++) {
+      const a = x[i];
+      const b = y[i + lag];
+      if (a !== a || b !== b) continue;
+      if (pairs === 0) {
+        originX = a;
+        originY = b;
+      }
+      pairs++;
+      sumX += a - originX;
+      sumY += b - originY;
     }
-    n++;
-    sumX += a - originX;
-    sumY += b - originY;
+    roughX = originX + sumX / pairs;
+    roughY = originY + sumY / pairs;
   }
-  if (n === 0) return { n, meanX: NaN, meanY: NaN, m2x: 0, m2y: 0, cxy: 0 };
-  const roughX = originX + sumX / n;
-  const roughY = originY + sumY / n;
+  let n = 0;
   let d1x = 0;
   let d1y = 0;
   let d2x = 0;
@@ -231,12 +275,14 @@ export function pairMoments(
     const dy = y[i + lag] - roughY;
     const product = dx * dy;
     if (product !== product) continue;
+    n++;
     d1x += dx;
     d1y += dy;
     d2x += dx * dx;
     d2y += dy * dy;
     dxy += product;
   }
+  if (n === 0) return { n, meanX: NaN, meanY: NaN, m2x: 0, m2y: 0, cxy: 0 };
   return {
     n,
     meanX: roughX + d1x / n,

@@ -1,6 +1,6 @@
 import { seriesLabels } from '../catalogue';
 import { defaultValue } from '../defaults';
-import { medianInPlace, scratch, takeValid } from '../numerics/selection';
+import { medianAbsoluteDeviation, scratch } from '../numerics/selection';
 import { removeLine } from '../numerics/regression';
 import type { RecipeSettings } from '../schemas/recipe';
 import type { PeriodState, SeriesKey, Step } from '../state';
@@ -56,15 +56,11 @@ export function leaveOutSpikes(
     if (judged.length !== length) judged = judged.subarray(0, length);
     removeLine(values, judged);
   }
-  const work = scratch(length);
-  const n = takeValid(judged, work);
-  const middle = medianInPlace(work, n);
-  for (let i = 0; i < n; i++) work[i] = Math.abs(work[i] - middle);
-  const mad = medianInPlace(work, n);
+  const { n, median: middle, mad, farthest } = medianAbsoluteDeviation(judged);
   if (!(mad > 0)) return { spikes: 0, median: middle, mad, constantMajority: n > 0 };
   const reach = (threshold * mad) / madOfUnitGaussian;
   let spikes = 0;
-  for (let i = 0; i < length; i++) {
+  for (let i = 0; farthest > reach && i < length; i++) {
     if (Math.abs(judged[i] - middle) > reach) {
       values[i] = NaN;
       spikes++;

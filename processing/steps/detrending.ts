@@ -1,4 +1,4 @@
-import { moments } from '../numerics/moments';
+import { mean, meanVariance } from '../numerics/moments';
 import { leastSquaresLine } from '../numerics/regression';
 import type { RecipeSettings } from '../schemas/recipe';
 import type { LedgerEntry, PeriodState, SeriesKey } from '../state';
@@ -19,9 +19,9 @@ const version = 1;
  * @deviates none
  */
 export function removeBlockMean(values: Float64Array, into: Float64Array): number {
-  const { mean } = moments(values);
-  for (let i = 0; i < values.length; i++) into[i] = values[i] - mean;
-  return mean;
+  const taken = mean(values);
+  for (let i = 0; i < values.length; i++) into[i] = values[i] - taken;
+  return taken;
 }
 
 export interface TrendShare {
@@ -45,13 +45,17 @@ export interface TrendShare {
 export function trendShare(values: Float64Array): TrendShare {
   const line = leastSquaresLine(values);
   if (line.n < 3) return { slope: Number.NaN, share: Number.NaN };
-  const { variance, isConstant } = moments(values);
+  const { variance, isConstant } = meanVariance(values, line.valueAtCentre);
   if (isConstant) return { slope: line.slope, share: Number.NaN };
-  let spread = 0;
-  for (let i = 0; i < values.length; i++) {
-    if (values[i] !== values[i]) continue;
-    const t = i - line.centre;
-    spread += t * t;
+  // Σ (t − t̄)² of a complete record is n (n² − 1)/12.
+  let spread = (line.n * (line.n * line.n - 1)) / 12;
+  if (line.n < values.length) {
+    spread = 0;
+    for (let i = 0; i < values.length; i++) {
+      if (values[i] !== values[i]) continue;
+      const t = i - line.centre;
+      spread += t * t;
+    }
   }
   return { slope: line.slope, share: Math.min(1, (line.slope * line.slope * (spread / line.n)) / variance) };
 }

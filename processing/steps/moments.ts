@@ -1,5 +1,5 @@
 import { seriesLabels } from '../catalogue';
-import { isConstantSignal, moments, pairMoments } from '../numerics/moments';
+import { isConstantSignal, meanVariance, pairMoments } from '../numerics/moments';
 import type { RecipeSettings } from '../schemas/recipe';
 import type { MomentState, PeriodState, ScalarKey, SeriesKey } from '../state';
 import { seriesKeys } from '../state';
@@ -41,15 +41,17 @@ export function turbulentKineticEnergy(uu: number, vv: number, ww: number): numb
  *
  * @param x,y n samples, NaN where missing (not changed)
  * @param lagSamples y(i + lag) belongs to x(i)
+ * @param near means of the two series if they are known, which saves a pass
  * @returns population covariance and its number of pairs; NaN with no pair
  */
 export function alignedCovariance(
   x: Float64Array,
   y: Float64Array,
   lagSamples: number,
+  near?: { x: number; y: number },
 ): { covariance: number; pairs: number } {
   const aligned = alignByLag(x, y, lagSamples);
-  const found = pairMoments(aligned.wind, aligned.scalar);
+  const found = pairMoments(aligned.wind, aligned.scalar, 0, aligned.wind.length, 0, near);
   if (found.n === 0) return { covariance: Number.NaN, pairs: 0 };
   const constant =
     isConstantSignal(found.m2x / found.n, found.meanX) || isConstantSignal(found.m2y / found.n, found.meanY);
@@ -85,16 +87,17 @@ export function momentsStep(state: PeriodState, settings: Pick<RecipeSettings, '
   for (const key of seriesKeys) {
     const series = state.series[key];
     if (!series) continue;
-    const { mean, variance, isConstant } = moments(series);
+    const { mean, variance, isConstant } = meanVariance(series);
     means[key] = mean;
     variances[key] = variance;
     if (isConstant) addConstantReason(state, key);
     state.values[sigmaKeys[key]] = Math.sqrt(variance);
   }
   state.values.sonicTemperatureMean = means.sonicTemperature ?? Number.NaN;
-  const uw = alignedCovariance(windU, windW, 0);
-  const vw = alignedCovariance(windV, windW, 0).covariance;
-  const uv = alignedCovariance(windU, windV, 0).covariance;
+  const near = (x: SeriesKey, y: SeriesKey) => ({ x: means[x] ?? Number.NaN, y: means[y] ?? Number.NaN });
+  const uw = alignedCovariance(windU, windW, 0, near('windU', 'windW'));
+  const vw = alignedCovariance(windV, windW, 0, near('windV', 'windW')).covariance;
+  const uv = alignedCovariance(windU, windV, 0, near('windU', 'windV')).covariance;
   const wScalar: MomentState['wScalar'] = {};
   const uScalar: MomentState['uScalar'] = {};
   const pairs: MomentState['pairs'] = { uw: uw.pairs };
@@ -102,9 +105,9 @@ export function momentsStep(state: PeriodState, settings: Pick<RecipeSettings, '
     const series = state.series[key];
     const lag = state.lags[key];
     if (!series || !lag) continue;
-    const withW = alignedCovariance(windW, series, lag.lagSamples);
+    const withW = alignedCovariance(windW, series, lag.lagSamples, near('windW', key));
     wScalar[key] = withW.covariance;
-    uScalar[key] = alignedCovariance(windU, series, lag.lagSamples).covariance;
+    uScalar[key] = alignedCovariance(windU, series, lag.lagSamples, near('windU', key)).covariance;
     pairs[key] = withW.pairs;
     state.values[covarianceKeys[key]] = withW.covariance;
   }

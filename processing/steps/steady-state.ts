@@ -39,6 +39,7 @@ export interface SteadyState {
  * @param subIntervals number of short intervals of equal length
  * @param offset index of the first sample within the period, when alignment has cut the beginning
  * @param length samples of the period; the short intervals are cut from it, so that they lie at fixed times
+ * @param near means of both series if they are known, which saves a pass
  * @returns deviation and what it is made of
  * @assumes same lag and rotation in the short intervals and the whole, no trend removed
  * @reference Foken & Wichura (1996), Agric. For. Meteorol. 78:83–105 (from memory)
@@ -50,6 +51,7 @@ export function steadyState(
   subIntervals: number,
   offset = 0,
   length: number = x.length,
+  near?: { x: number; y: number },
 ): SteadyState {
   let whole: PartialMoments = { n: 0, meanX: Number.NaN, meanY: Number.NaN, m2x: 0, m2y: 0, cxy: 0 };
   const parts: number[] = [];
@@ -60,7 +62,7 @@ export function steadyState(
     const end = Math.round(((part + 1) * length) / subIntervals);
     const from = Math.min(x.length, Math.max(0, start - offset));
     const to = Math.min(x.length, Math.max(0, end - offset));
-    const found = pairMoments(x, y, from, to);
+    const found = pairMoments(x, y, from, to, 0, near);
     whole = mergeMoments(whole, found);
     if (found.n > 0 && found.n >= (minimumValidPercent / 100) * (end - start)) {
       parts.push(found.cxy / found.n);
@@ -131,6 +133,7 @@ export function steadyStateStep(state: PeriodState, settings: RecipeSettings['st
       settings.subIntervals,
       aligned.offset,
       first.length,
+      { x: state.moments?.means[x] ?? Number.NaN, y: state.moments?.means[y] ?? Number.NaN },
     );
     const percent = found.deviation * 100;
     const key = `steadyState.${flux}`;

@@ -1,4 +1,4 @@
-import { quantileInPlace, scratch } from '../../numerics/selection';
+import { quantilesInPlace, scratch } from '../../numerics/selection';
 
 const degrees = 180 / Math.PI;
 
@@ -48,10 +48,10 @@ export function angleOfAttack(
     work[n++] = ratio;
     if (Math.abs(ratio) > limit) steep++;
   }
-  const at = (p: number) => Math.atan(quantileInPlace(work, n, p)) * degrees;
+  const [p1, p50, p99] = quantilesInPlace(work, n, [0.01, 0.5, 0.99]).map((at) => Math.atan(at) * degrees);
   return {
     n,
     steepShare: n === 0 ? NaN : steep / n,
-    percentilesDeg: [at(0.01), at(0.5), at(0.99)],
+    percentilesDeg: [p1, p50, p99],
   };
 }

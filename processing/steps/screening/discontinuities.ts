@@ -68,9 +68,33 @@ export function discontinuities(
   let meanStepAt = -1;
   let varianceStep = -1;
   let varianceStepAt = -1;
-  for (let i = half; i <= length - half; i++) {
-    const nLeft = isComplete ? half : valid[i] - valid[i - half];
-    const nRight = isComplete ? half : valid[i + half] - valid[i];
+  if (isComplete) {
+    // With n samples in either half, s their sums and q their sums of squares: n times the step in the mean is s₂ − s₁, and n times that
+    // in the variance (q₂ − q₁) − (s₂ − s₁)(s₂ + s₁)/n.
+    const perSample = 1 / half;
+    for (let i = half; i <= length - half; i++) {
+      const before = sums[i - half];
+      const here = sums[i];
+      const after = sums[i + half];
+      const stepOfSums = after - here - (here - before);
+      const step = Math.abs(stepOfSums);
+      if (step > meanStep) {
+        meanStep = step;
+        meanStepAt = i;
+      }
+      const stepOfSquares = squares[i + half] - squares[i] - (squares[i] - squares[i - half]);
+      const change = Math.abs(stepOfSquares - stepOfSums * (after - before) * perSample);
+      if (change > varianceStep) {
+        varianceStep = change;
+        varianceStepAt = i;
+      }
+    }
+    meanStep *= perSample;
+    varianceStep *= perSample;
+  }
+  for (let i = half; !isComplete && i <= length - half; i++) {
+    const nLeft = valid[i] - valid[i - half];
+    const nRight = valid[i + half] - valid[i];
     if (nLeft < fewest || nRight < fewest || nLeft === 0 || nRight === 0) continue;
     const left = (sums[i] - sums[i - half]) / nLeft;
     const right = (sums[i + half] - sums[i]) / nRight;

@@ -48,18 +48,16 @@ export function recordStatistics(values: Float64Array): RecordStatistics {
   }
   let min = Infinity;
   let max = -Infinity;
-  for (let i = 0; i < values.length; i++) {
-    const value = values[i];
-    if (value < min) min = value;
-    if (value > max) max = value;
-  }
   let d2 = 0;
   let r2 = 0;
   let r3 = 0;
   let r4 = 0;
   let time = -centre;
   for (let i = 0; i < values.length; i++) {
-    const d = values[i] - mean;
+    const value = values[i];
+    if (value < min) min = value;
+    if (value > max) max = value;
+    const d = value - mean;
     // Residuals of a least-squares line have the mean 0.
     const r = d - slope * time;
     time += 1;
