@@ -106,7 +106,7 @@ export function CurvePlot(props: CurvePlotProps) {
           {props.xUnit}
         </SvgText>
         <SvgText x={0} y={11} fill={colour.inkSoft} fontFamily={face.figure} fontSize={11}>
-          {props.yUnit}
+          {raisedUnit(props.yUnit)}
         </SvgText>
         <Path
           d={`M${path}`}
@@ -141,4 +141,16 @@ export function CurvePlot(props: CurvePlotProps) {
       </Svg>
     </View>
   );
+}
+
+/** "µmol m-2 s-1" with dots, because SVG text cannot raise: "µmol/(m² s)". The mono face has ² and ³. */
+function raisedUnit(unit: string): string {
+  const parts = unit.split(' ');
+  const over = parts.filter((part) => /-\d$/.test(part));
+  const above = parts.filter((part) => !/-\d$/.test(part)).join(' ');
+  if (over.length === 0) return above;
+  const below = over
+    .map((part) => part.replace('-', '').replace(/1$/, '').replace(/2$/, '²').replace(/3$/, '³'))
+    .join(' ');
+  return over.length === 1 ? `${above || '1'}/${below}` : `${above || '1'}/(${below})`;
 }

@@ -1,71 +1,68 @@
-import Svg, { G, Line, Rect, Text as SvgText } from 'react-native-svg';
+import { memo } from 'react';
+import Svg, { G, Line, Text as SvgText } from 'react-native-svg';
 import { View } from 'react-native';
-import { formatDay, formatOffset } from '../format/times';
-import { face, useTheme } from '../tokens';
+import { formatDay, formatOffset, startOfDayMs } from '../format/times';
+import { Text } from '../primitives';
+import { useCursorMs } from './series-cursor';
 import { timeTicks, xOf } from '../spine/spine-geometry';
+import { face, useTheme } from '../tokens';
 
 export interface TimeAxisProps {
   window: { fromMs: number; toMs: number };
   width: number;
   axisWidth: number;
   offsetMinutes: number;
-  /** Both ends of the period under the cursor, written on the axis. */
-  cursor: { startMs: number; endMs: number; label: string } | null;
+  /** Words of the period that begins at an instant, written on the axis under the cursor; null when there is none. */
+  periodAt: (startMs: number) => { middleMs: number; label: string } | null;
 }
 
 const dayMs = 86_400_000;
+const height = 44;
 
 /** Hours and day names of the station's clock under the panels, with the zone stated. */
-export function TimeAxis({ window, width, axisWidth, offsetMinutes, cursor }: TimeAxisProps) {
+export const TimeAxis = memo(function TimeAxis(props: TimeAxisProps) {
+  const { window, width, axisWidth, offsetMinutes } = props;
   const { colour } = useTheme();
   const plotWidth = Math.max(1, width - axisWidth - 1);
   const scale = { ...window, width: plotWidth };
   const ticks = timeTicks(scale, offsetMinutes, 58);
-  const offsetMs = offsetMinutes * 60_000;
+  // hours stand above, the days they belong to below; in a longer window the ticks themselves are days
+  const hasDays = ticks.some((tick) => tick.label.includes(':'));
   const days: number[] = [];
-  if (window.toMs - window.fromMs <= 14 * dayMs) {
-    for (
-      let local = Math.floor((window.fromMs + offsetMs) / dayMs) * dayMs;
-      local < window.toMs + offsetMs;
-      local += dayMs
-    ) {
-      days.push(local - offsetMs);
-    }
+  if (hasDays) {
+    for (let start = startOfDayMs(window.fromMs, offsetMinutes); start < window.toMs; start += dayMs)
+      days.push(start);
   }
-  const clock = (ms: number) => new Date(ms + offsetMs).toISOString().slice(11, 16);
-  const tagWidth = cursor ? cursor.label.length * 7.3 + 14 : 0;
-  const tagX = cursor
-    ? Math.min(
-        width - tagWidth,
-        Math.max(0, axisWidth + xOf((cursor.startMs + cursor.endMs) / 2, scale) - tagWidth / 2),
-      )
-    : 0;
   return (
-    <View aria-hidden style={{ width, height: 46 }}>
-      <Svg width={width} height={46} viewBox={`0 0 ${width} 46`}>
+    <View aria-hidden style={{ width, height }}>
+      <Svg width={width} height={height} viewBox={`0 0 ${width} ${height}`}>
         <Line x1={axisWidth} x2={width} y1={1} y2={1} stroke={colour.rule} strokeWidth={1} />
-        <SvgText x={0} y={17} fill={colour.inkSoft} fontFamily={face.figure} fontSize={11}>
-          {axisWidth > 60 ? `station ${formatOffset(offsetMinutes)}` : formatOffset(offsetMinutes)}
+        <SvgText
+          x={axisWidth - 6}
+          y={37}
+          textAnchor="end"
+          fill={colour.inkSoft}
+          fontFamily={face.figure}
+          fontSize={11}
+        >
+          {formatOffset(offsetMinutes)}
         </SvgText>
         {ticks.map((tick) => {
           const x = axisWidth + xOf(tick.atMs, scale);
-          const label =
-            window.toMs - window.fromMs <= 14 * dayMs && /\d+ \w+/.test(tick.label)
-              ? clock(tick.atMs)
-              : tick.label;
+          const isDayName = hasDays && tick.major;
           const anchor = x < axisWidth + 20 ? 'start' : x > width - 20 ? 'end' : 'middle';
           return (
             <G key={tick.atMs}>
               <Line x1={x} x2={x} y1={1} y2={tick.major ? 9 : 6} stroke={colour.rule} strokeWidth={1} />
               <SvgText
-                x={x}
-                y={21}
+                x={anchor === 'start' ? Math.max(axisWidth, x) : x}
+                y={20}
                 fill={colour.inkSoft}
                 textAnchor={anchor}
                 fontFamily={face.figure}
                 fontSize={12}
               >
-                {label}
+                {isDayName ? '00:00' : tick.label}
               </SvgText>
             </G>
           );
@@ -73,16 +70,13 @@ export function TimeAxis({ window, width, axisWidth, offsetMinutes, cursor }: Ti
         {days.map((start) => {
           const x = Math.max(axisWidth, axisWidth + xOf(start, scale));
           const right = Math.min(width, axisWidth + xOf(start + dayMs, scale));
-          if (right - x < 40) return null;
-          const name = formatDay(start, offsetMinutes);
-          const fits = Math.floor((right - x - 6) / 7);
-          const text = name.length <= fits ? name : name.replace(/ \d{4}$/, '').slice(0, Math.max(0, fits));
-          return (
+          const text = dayName(start, offsetMinutes, right - x - 8);
+          return text === '' ? null : (
             <G key={start}>
               <Line x1={x} x2={x} y1={1} y2={42} stroke={colour.rule} strokeWidth={1} />
               <SvgText
                 x={x + 5}
-                y={39}
+                y={38}
                 fill={colour.ink}
                 fontFamily={face.text}
                 fontSize={13}
@@ -93,23 +87,47 @@ export function TimeAxis({ window, width, axisWidth, offsetMinutes, cursor }: Ti
             </G>
           );
         })}
-        {cursor ? (
-          <G>
-            <Rect x={tagX} y={4} width={tagWidth} height={21} rx={2} fill={colour.beam} />
-            <SvgText
-              x={tagX + tagWidth / 2}
-              y={19}
-              fill={colour.panel}
-              textAnchor="middle"
-              fontFamily={face.figure}
-              fontSize={12}
-              fontWeight="600"
-            >
-              {cursor.label}
-            </SvgText>
-          </G>
-        ) : null}
       </Svg>
+      <CursorTag {...props} plotWidth={plotWidth} />
+    </View>
+  );
+});
+
+/** "Thu 17 June 2027", shorter where there is less room, nothing where there is none. */
+function dayName(start: number, offsetMinutes: number, roomPx: number): string {
+  const whole = formatDay(start, offsetMinutes);
+  const short = whole.replace(/ \d{4}$/, '');
+  const [weekday = '', day = ''] = whole.split(' ');
+  return [whole, short, `${weekday} ${day}`, day].find((text) => text.length * 7 <= roomPx) ?? '';
+}
+
+/** Both ends of the period under the cursor, on the axis. */
+function CursorTag({ window, width, axisWidth, plotWidth, periodAt }: TimeAxisProps & { plotWidth: number }) {
+  const { colour } = useTheme();
+  const cursorMs = useCursorMs();
+  const period = cursorMs === null ? null : periodAt(cursorMs);
+  if (!period) return null;
+  const x = axisWidth + xOf(period.middleMs, { ...window, width: plotWidth });
+  if (x < axisWidth || x > width) return null;
+  const tagWidth = period.label.length * 7.3 + 14;
+  return (
+    <View
+      style={{
+        position: 'absolute',
+        top: 3,
+        left: Math.min(width - tagWidth, Math.max(0, x - tagWidth / 2)),
+        width: tagWidth,
+        height: 21,
+        borderRadius: 2,
+        backgroundColor: colour.beam,
+        alignItems: 'center',
+        justifyContent: 'center',
+        pointerEvents: 'none',
+      }}
+    >
+      <Text variant="figure" size={12} strong colour={colour.panel}>
+        {period.label}
+      </Text>
     </View>
   );
 }

@@ -1,8 +1,9 @@
 import { quantity } from '../../processing/catalogue';
 import type { SeriesData } from '../../server/contract/api';
-import { formatNumber } from '../format/numbers';
+import { formatNumber, formatUncertainty } from '../format/numbers';
 import { shownSpread, shownValue } from '../format/quantities';
 import type { GradeValue } from '../tokens';
+import { panelLook } from './panel-looks';
 
 /** One quantity over time, in the unit people read, cut for plotting. */
 export interface PlotSeries {
@@ -15,9 +16,13 @@ export interface PlotSeries {
   line: (number | null)[];
   /** All values. */
   value: (number | null)[];
+  /** One standard deviation of sampling error, in the unit of the value, of all values. */
+  spread: (number | null)[];
   upper: (number | null)[];
   lower: (number | null)[];
   grade: (number | null)[];
+  /** True where no period exists, between two that do: not computed, as against computed without a value. */
+  isHole: boolean[];
   truth: (number | null)[] | null;
 }
 
@@ -30,6 +35,7 @@ export function plotSeries(data: SeriesData, key: string): PlotSeries {
   const spread = uncertaintyKey ? (data.quantities[uncertaintyKey] ?? []) : [];
   const grades = gradedBy ? (data.grades[gradedBy] ?? []) : [];
   const truthColumn = data.truth?.[key] ?? null;
+  const isAngle = panelLook(key).dash === null;
   const series: PlotSeries = {
     key,
     x: [],
@@ -37,9 +43,11 @@ export function plotSeries(data: SeriesData, key: string): PlotSeries {
     endMs: [],
     line: [],
     value: [],
+    spread: [],
     upper: [],
     lower: [],
     grade: [],
+    isHole: [],
     truth: truthColumn ? [] : null,
   };
   const put = (
@@ -49,22 +57,25 @@ export function plotSeries(data: SeriesData, key: string): PlotSeries {
     sigma: number | null,
     grade: number | null,
     truth: number | null,
+    isHole: boolean,
   ) => {
-    const isJoined = value !== null && grade !== 2;
+    const isJoined = value !== null && grade !== 2 && !isAngle;
     series.x.push((startMs + endMs) / 2000);
     series.startMs.push(startMs);
     series.endMs.push(endMs);
     series.value.push(value);
+    series.spread.push(sigma);
     series.line.push(isJoined ? value : null);
     series.upper.push(isJoined && sigma !== null ? value + sigma : null);
     series.lower.push(isJoined && sigma !== null ? value - sigma : null);
     series.grade.push(grade);
+    series.isHole.push(isHole);
     series.truth?.push(truth);
   };
   data.startMs.forEach((startMs, index) => {
     const endMs = data.endMs[index] ?? startMs;
     const before = index > 0 ? (data.endMs[index - 1] ?? startMs) : startMs;
-    if (startMs > before) put(before, startMs, null, null, null, null);
+    if (startMs > before) put(before, startMs, null, null, null, null, true);
     put(
       startMs,
       endMs,
@@ -72,14 +83,53 @@ export function plotSeries(data: SeriesData, key: string): PlotSeries {
       shownSpread(key, spread[index]),
       grades[index] ?? null,
       truthColumn ? shownValue(key, truthColumn[index]) : null,
+      false,
     );
   });
   return series;
 }
 
-/** Spans without a value inside a window, for hatching. */
-export function gapsOf(series: PlotSeries, fromMs: number, toMs: number): { fromMs: number; toMs: number }[] {
-  const gaps: { fromMs: number; toMs: number }[] = [];
+/** Index range [first, end) of the entries that touch a window. */
+export function visibleRange(
+  series: Pick<PlotSeries, 'startMs' | 'endMs'>,
+  fromMs: number,
+  toMs: number,
+): [number, number] {
+  return [
+    firstWhere(series.endMs, (end) => end > fromMs),
+    firstWhere(series.startMs, (start) => start >= toMs),
+  ];
+}
+
+/** First index for which the test holds, in an ascending column. */
+function firstWhere(column: readonly number[], test: (value: number) => boolean): number {
+  let low = 0;
+  let high = column.length;
+  while (low < high) {
+    const middle = (low + high) >> 1;
+    if (test(column[middle] ?? Number.NaN)) high = middle;
+    else low = middle + 1;
+  }
+  return low;
+}
+
+export interface Gap {
+  fromMs: number;
+  toMs: number;
+}
+
+/**
+ * Spans without a value inside a window, for hatching.
+ *
+ * @param which `all`; `without-value`: periods that were computed and have none; `absent`: spans without any period
+ */
+export function gapsOf(
+  series: PlotSeries,
+  fromMs: number,
+  toMs: number,
+  which: 'all' | 'without-value' | 'absent' = 'all',
+): Gap[] {
+  const gaps: Gap[] = [];
   const add = (from: number, to: number) => {
     const clippedFrom = Math.max(from, fromMs);
     const clippedTo = Math.min(to, toMs);
@@ -88,14 +138,18 @@ export function gapsOf(series: PlotSeries, fromMs: number, toMs: number): { from
     if (last && last.toMs >= clippedFrom) last.toMs = Math.max(last.toMs, clippedTo);
     else gaps.push({ fromMs: clippedFrom, toMs: clippedTo });
   };
+  const [first, end] = visibleRange(series, fromMs, toMs);
   let covered = fromMs;
-  series.startMs.forEach((startMs, index) => {
+  for (let index = first; index < end; index += 1) {
+    const startMs = series.startMs[index] ?? 0;
     const endMs = series.endMs[index] ?? startMs;
-    if (startMs > covered) add(covered, startMs);
-    if (series.value[index] === null) add(startMs, endMs);
+    const isHole = series.isHole[index] === true;
+    if (startMs > covered && which !== 'without-value') add(covered, startMs);
+    if (series.value[index] === null && (which === 'all' || isHole === (which === 'absent')))
+      add(startMs, endMs);
     covered = Math.max(covered, endMs);
-  });
-  if (covered < toMs) add(covered, toMs);
+  }
+  if (covered < toMs && which !== 'without-value') add(covered, toMs);
   return gaps;
 }
 
@@ -115,45 +169,69 @@ export function periodIndexAt(startMs: readonly number[], endMs: readonly number
 }
 
 /**
- * Ends of a value axis with headroom for the readout. Rejected values outside of four times the spread of the others don't stretch the
+ * Ends of a value axis with room for the readout. Rejected values outside of four times the spread of the others don't stretch the
  * axis: they sit on its edge.
+ *
+ * @param readoutShare share of the axis that stays free for the readout, 0–0.5
  */
-export function axisRange(series: PlotSeries, fromMs: number, toMs: number): [number, number] {
+export function axisRange(
+  series: PlotSeries,
+  fromMs: number,
+  toMs: number,
+  readoutShare = 0.18,
+): [number, number] {
+  const { headroom, splits } = panelLook(series.key);
+  if (splits) return withRoom(splits[0] ?? 0, splits.at(-1) ?? 1, readoutShare, headroom);
   let low = Infinity;
   let high = -Infinity;
   const widen = (value: number | null | undefined) => {
     if (value === null || value === undefined) return;
-    low = Math.min(low, value);
-    high = Math.max(high, value);
+    if (value < low) low = value;
+    if (value > high) high = value;
   };
   const rejected: number[] = [];
-  series.value.forEach((value, index) => {
-    const end = series.endMs[index] ?? 0;
-    const start = series.startMs[index] ?? 0;
-    if (end <= fromMs || start >= toMs) return;
+  const [first, end] = visibleRange(series, fromMs, toMs);
+  for (let index = first; index < end; index += 1) {
+    const value = series.value[index] ?? null;
     if (series.grade[index] === 2) {
       if (value !== null) rejected.push(value);
-      return;
+      continue;
     }
     widen(value);
     widen(series.upper[index]);
     widen(series.lower[index]);
     widen(series.truth?.[index]);
-  });
+  }
   if (low > high) {
     rejected.forEach(widen);
     if (low > high) return [0, 1];
   } else {
     const reach = Math.max(high - low, 1e-9);
-    for (const value of rejected) if (value < high + 0.5 * reach && value > low - 0.5 * reach) widen(value);
+    const keptLow = low - 0.5 * reach;
+    const keptHigh = high + 0.5 * reach;
+    for (const value of rejected) if (value < keptHigh && value > keptLow) widen(value);
   }
-  const { group } = quantity(series.key);
+  const { group, decimals } = quantity(series.key);
   if (group === 'flux') {
     low = Math.min(low, 0);
     high = Math.max(high, 0);
   }
-  const reach = high - low || Math.max(1, Math.abs(high) * 0.1);
-  return [low - 0.06 * reach, high + 0.22 * reach];
+  // a record that hardly moves is not blown up until its last digit looks like weather
+  const least = 10 * 10 ** -decimals;
+  if (high - low < least) {
+    const middle = (low + high) / 2;
+    low = group === 'flux' && low === 0 ? 0 : middle - least / 2;
+    high = low + least;
+  }
+  return withRoom(low, high, readoutShare, headroom);
+}
+
+function withRoom(low: number, high: number, share: number, side: 'top' | 'bottom'): [number, number] {
+  const edge = 0.05;
+  const whole = (high - low) / (1 - edge - share);
+  return side === 'top'
+    ? [low - edge * whole, high + share * whole]
+    : [low - share * whole, high + edge * whole];
 }
 
 /** Decimals that tell an axis's splits apart. */
@@ -164,6 +242,16 @@ export function decimalsOf(splits: readonly (number | null)[]): number {
   return step >= 1 || step === 0 ? 0 : Math.min(4, Math.ceil(-Math.log10(step) - 1e-9));
 }
 
+/** "−12.2 ± 1.9" of one entry; "no data" where it has no value, "not computed" where there is no period. */
+export function readoutText(series: PlotSeries, index: number): string {
+  const value = series.value[index] ?? null;
+  if (value === null) return series.isHole[index] === true ? 'not computed' : 'no data';
+  const { decimals, unit } = quantity(series.key);
+  const sigma = series.spread[index] ?? null;
+  const text = `${formatNumber(value, decimals)}${unit === '°' ? '°' : ''}`;
+  return sigma === null ? text : `${text} ${formatUncertainty(sigma, decimals)}`;
+}
+
 /** A column's number as a grade. */
 export function gradeValue(grade: number | null | undefined): GradeValue {
   return grade === 0 || grade === 1 || grade === 2 ? grade : null;
@@ -172,17 +260,20 @@ export function gradeValue(grade: number | null | undefined): GradeValue {
 /** What a panel shows, for those who hear it: least, mean, greatest, gaps, grades. */
 export function describePanel(series: PlotSeries, window: { fromMs: number; toMs: number }): string {
   const { symbol, unit, decimals, gradedBy } = quantity(series.key);
-  const shown = series.value.flatMap((value, index) => {
-    const inside = (series.endMs[index] ?? 0) > window.fromMs && (series.startMs[index] ?? 0) < window.toMs;
-    return inside ? [{ value, grade: series.grade[index] ?? null }] : [];
-  });
+  const [first, end] = visibleRange(series, window.fromMs, window.toMs);
+  const shown = series.value
+    .slice(first, end)
+    .map((value, at) => ({ value, grade: series.grade[first + at] ?? null }));
   const values = shown.flatMap(({ value }) => (value === null ? [] : [value]));
   if (values.length === 0) return `${symbol}: no data in this window`;
   const mean = values.reduce((sum, value) => sum + value, 0) / values.length;
+  const least = values.reduce((low, value) => Math.min(low, value), Infinity);
+  const greatest = values.reduce((high, value) => Math.max(high, value), -Infinity);
+  const isAngle = panelLook(series.key).dash === null;
   const count = (grade: number) => shown.filter((one) => one.grade === grade).length;
   const grades = gradedBy ? `; ${count(0)} good, ${count(1)} usable, ${count(2)} rejected` : '';
   return (
-    `${symbol} in ${unit}: least ${formatNumber(Math.min(...values), decimals)}, mean ${formatNumber(mean, decimals)}, ` +
-    `greatest ${formatNumber(Math.max(...values), decimals)}, ${shown.length - values.length} without data${grades}`
+    `${symbol} in ${unit}: least ${formatNumber(least, decimals)}, ${isAngle ? '' : `mean ${formatNumber(mean, decimals)}, `}` +
+    `greatest ${formatNumber(greatest, decimals)}, ${shown.length - values.length} without data${grades}`
   );
 }

@@ -7,6 +7,7 @@ import { GradeShape } from './GradeMark';
 import { LimitBar } from './LimitBar';
 import type { LimitBarProps } from './LimitBar';
 import { Text } from './Text';
+import { UnitText } from './UnitText';
 
 export interface ReasonCardProps {
   grade: GradeValue;
@@ -43,7 +44,9 @@ export function ReasonCard(props: ReasonCardProps) {
         </Svg>
       </View>
       <View style={{ flex: 1, gap: 4, minWidth: 0 }}>
-        <Text strong>{props.finding}</Text>
+        <Text strong>
+          <UnitText>{props.finding}</UnitText>
+        </Text>
         {props.sentence ? <Text variant="small">{props.sentence}</Text> : null}
         {props.limit ? <LimitBar {...props.limit} /> : null}
         {props.source ? (

@@ -99,7 +99,7 @@ export function ValueRow(props: ValueRowProps) {
           figureText
         )}
       </View>
-      <View role="cell" style={{ minWidth: 60 }}>
+      <View role="cell" style={{ minWidth: 64 }}>
         <Text variant="figure" soft align="right">
           {hasValue && props.uncertainty !== undefined ? formatUncertainty(props.uncertainty, decimals) : ''}
         </Text>
@@ -132,7 +132,7 @@ export function FactRow({ label, children }: { label: string; children: ReactNod
       }}
     >
       <Text variant="label" style={{ flexShrink: 0, maxWidth: '50%' }}>
-        {label}
+        <UnitText>{label}</UnitText>
       </Text>
       <View style={{ flexShrink: 1, alignItems: 'flex-end', minWidth: 0 }}>
         {typeof children === 'string' ? <Text align="right">{children}</Text> : children}

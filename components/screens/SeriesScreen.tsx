@@ -1,19 +1,21 @@
-import { useCallback, useDeferredValue, useMemo, useState } from 'react';
+import { useCallback, useEffect, useMemo, useState } from 'react';
 import { View } from 'react-native';
 import { router } from 'expo-router';
 import type { Href } from 'expo-router';
 import { quantity } from '../../processing/catalogue';
-import type { FluxKey } from '../../processing/state';
 import { nights as nightsOf } from '../../processing/solar';
-import type { Run, StationSummary } from '../../server/contract/api';
-import { useRuns } from '../data/use-runs';
-import { usePeriod, usePeriods, useSeries, useSpine } from '../data/use-run-results';
+import type { FluxKey } from '../../processing/state';
+import type { Run, SeriesData, StationSummary } from '../../server/contract/api';
+import { useGroupEvents } from '../data/use-group-events';
+import { usePeriods, useSeries, useSpine } from '../data/use-run-results';
+import { isUnderWay, useRuns } from '../data/use-runs';
 import { useStation } from '../data/use-stations';
-import { formatNumber, formatUncertainty } from '../format/numbers';
+import { formatPlural } from '../format/numbers';
 import { useClock } from '../format/useClock';
+import { PanelValue } from '../plots/PanelCursor';
+import { createSeriesCursor, SeriesCursorContext } from '../plots/series-cursor';
 import { SeriesPanel } from '../plots/SeriesPanel';
-import { gradeValue, periodIndexAt, plotSeries } from '../plots/series-plot';
-import type { PlotSeries } from '../plots/series-plot';
+import { periodIndexAt, plotSeries } from '../plots/series-plot';
 import { TimeAxis } from '../plots/TimeAxis';
 import {
   Button,
@@ -28,41 +30,47 @@ import {
   Notice,
   ProgressLine,
   Section,
+  SegmentChoice,
   Sheet,
   Text,
-  UnitText,
+  TextLink,
 } from '../primitives';
+import { CursorBar, CursorSpoken, CursorVerdict } from '../series/CursorBar';
+import { EmptyPanel } from '../series/EmptyPanel';
 import { ExportSheet } from '../series/ExportSheet';
 import { GradeCounts } from '../series/GradeCounts';
+import { PanelHead, PanelName } from '../series/PanelName';
+import { gradeCounts, tellingPeriod } from '../series/period-columns';
 import { PeriodInspector } from '../series/PeriodInspector';
-import { PeriodTable } from '../series/PeriodTable';
+import { isFlagged, PeriodTable } from '../series/PeriodTable';
+import { useSettled } from '../series/use-settled';
 import { useWidth } from '../series/use-width';
 import { useWindowKeys, windowKeyWords } from '../series/use-window-keys';
+import { rememberedView, rememberView } from '../series/view-memory';
 import { AppShell, periodPath, stationPath } from '../shell';
-import { clampWindow, timeTicks } from '../spine/spine-geometry';
+import type { AppShellProps } from '../shell';
+import { clampWindow, gridInstants, zoomedWindow } from '../spine/spine-geometry';
 import { Spine } from '../spine/Spine';
 import type { TimeWindow } from '../spine/Spine';
-import { space, traceDashes, useTheme, useWide } from '../tokens';
+import { windowWords } from '../spine/window-words';
+import { space, useTheme, useWide, webStyle } from '../tokens';
 
-const panelKeys = [
-  'co2Flux',
-  'latentHeat',
-  'sensibleHeat',
-  'ustar',
-  'windSpeed',
-  'windDirection',
-  'airTemperature',
-];
+const fluxPanels = ['co2Flux', 'latentHeat', 'sensibleHeat', 'ustar'] as const;
+const airPanels = ['windSpeed', 'windDirection', 'airTemperature'] as const;
 const columnKeys = [
-  ...panelKeys,
-  'co2FluxRandom',
-  'latentHeatRandom',
-  'sensibleHeatRandom',
-  'ustarRandom',
+  ...fluxPanels,
+  ...airPanels,
+  ...fluxPanels.flatMap((key) => quantity(key).uncertaintyKey ?? []),
   'zeta',
 ];
 const dayMs = 86_400_000;
+const halfHourMs = 1_800_000;
+/** Shortest window [ms]. */
+const leastWindowMs = 2 * halfHourMs;
+/** More rows than this are no table that anybody reads. */
+const mostTableRows = 400;
 const gradedFlux: FluxKey = 'co2Flux';
+const noColumn: number[] = [];
 
 export interface SeriesScreenProps {
   group: string;
@@ -71,8 +79,11 @@ export interface SeriesScreenProps {
   run?: string;
 }
 
+type Shell = Omit<AppShellProps, 'children'>;
+
 /** The day, the month, the years of one station: stacked panels over one time axis, the spine moves them. */
 export function SeriesScreen({ group, station, run: wantedRun }: SeriesScreenProps) {
+  useGroupEvents(group);
   const stationQuery = useStation(group, station);
   const runsQuery = useRuns(group, station);
   const runs = runsQuery.data ?? [];
@@ -81,62 +92,70 @@ export function SeriesScreen({ group, station, run: wantedRun }: SeriesScreenPro
     runs.find((one) => one.periodsDone > 0 || one.state === 'computing') ??
     runs[0] ??
     null;
-  const shell = {
+  const summary = stationQuery.data;
+  const shell: Shell = {
     title: 'Series',
-    place: 'series' as const,
+    place: 'series',
     groupSlug: group,
     stationSlug: station,
-    stationName: stationQuery.data?.station.name,
-    stationOffsetMinutes: stationQuery.data?.station.utcOffsetMinutes,
+    stationName: summary?.station.name,
+    stationOffsetMinutes: summary?.station.utcOffsetMinutes,
   };
   const error = stationQuery.error ?? runsQuery.error;
   if (error) {
     return (
-      <AppShell {...shell}>
-        <View style={{ padding: space.xl }}>
-          <ErrorNotice
-            error={error}
-            onRetry={() => void Promise.all([stationQuery.refetch(), runsQuery.refetch()])}
-          />
-        </View>
-      </AppShell>
+      <PlainPage shell={shell} title="The series cannot be shown">
+        <ErrorNotice
+          error={error}
+          safe="Raw files and results are not touched by this."
+          onRetry={() => void Promise.all([stationQuery.refetch(), runsQuery.refetch()])}
+        />
+      </PlainPage>
     );
   }
-  if (!stationQuery.data || runsQuery.isPending) {
+  if (!summary || runsQuery.isPending) {
     return (
-      <AppShell {...shell}>
-        <View style={{ padding: space.xl }}>
-          <LoadingLine label="reading the station" />
-        </View>
-      </AppShell>
+      <PlainPage shell={shell} title="Series">
+        <LoadingLine label="reading the station" />
+      </PlainPage>
     );
   }
   if (!run) {
+    const hasFiles = summary.rawFiles > 0;
     return (
-      <AppShell {...shell}>
-        <View style={{ padding: space.xl, gap: space.l }}>
-          <Text variant="title">Nothing computed yet</Text>
-          <EmptyState
-            title={
-              stationQuery.data.rawFiles > 0
-                ? `${stationQuery.data.rawFiles} raw files are here, no run has been made of them.`
-                : 'No raw files yet.'
-            }
-            action={
-              <Button
-                kind="primary"
-                label={stationQuery.data.rawFiles > 0 ? 'Compute fluxes' : 'Bring in records'}
-                href={stationPath(group, station, stationQuery.data.rawFiles > 0 ? 'runs' : 'raw-files')}
-              />
-            }
-          >
-            Fluxes show here, half hour by half hour, as soon as they are computed.
-          </EmptyState>
-        </View>
-      </AppShell>
+      <PlainPage shell={shell} title="Nothing computed yet">
+        <EmptyState
+          title={
+            hasFiles
+              ? `${formatPlural(summary.rawFiles, 'raw file')} ${summary.rawFiles === 1 ? 'is' : 'are'} here; no run has been made of them.`
+              : 'No raw files yet.'
+          }
+          action={
+            <Button
+              kind="primary"
+              label={hasFiles ? 'Compute fluxes' : 'Bring in raw files'}
+              href={stationPath(group, station, hasFiles ? 'runs' : 'raw-files')}
+            />
+          }
+        >
+          Fluxes show here, half hour by half hour, as soon as they are computed.
+        </EmptyState>
+      </PlainPage>
     );
   }
-  return <RunSeries key={run.id} {...{ group, station, run, runs, shell }} summary={stationQuery.data} />;
+  return <RunSeries key={run.id} {...{ group, station, run, runs, shell, summary }} />;
+}
+
+function PlainPage({ shell, title, children }: { shell: Shell; title: string; children: React.ReactNode }) {
+  const wide = useWide();
+  return (
+    <AppShell {...shell}>
+      <View style={{ padding: wide ? space.xl : space.l, gap: space.l, maxWidth: 760 }}>
+        <Text variant="title">{title}</Text>
+        {children}
+      </View>
+    </AppShell>
+  );
 }
 
 interface RunSeriesProps {
@@ -145,71 +164,46 @@ interface RunSeriesProps {
   run: Run;
   runs: readonly Run[];
   summary: StationSummary;
-  shell: object & { title: string };
+  shell: Shell;
 }
 
 function RunSeries({ group, station, run, runs, summary, shell }: RunSeriesProps) {
   const wide = useWide();
-  const { colour } = useTheme();
   const clock = useClock(summary.station.utcOffsetMinutes);
+  const isWorking = isUnderWay(run);
   const bounds = useMemo(
-    () => ({ fromMs: run.fromMs, toMs: Math.max(run.toMs, run.fromMs + 1_800_000) }),
+    () => ({ fromMs: run.fromMs, toMs: Math.max(run.toMs, run.fromMs + halfHourMs) }),
     [run.fromMs, run.toMs],
   );
-  const whole = useMemo(
+  const [remembered] = useState(() => rememberedView(run.id));
+  const [view, setView] = useState<TimeWindow>(
     () =>
+      (remembered ? keptInView(remembered.window, remembered.chosenMs, bounds) : null) ??
       clampWindow({ fromMs: Math.max(bounds.fromMs, bounds.toMs - 4 * dayMs), toMs: bounds.toMs }, bounds),
-    [bounds],
   );
-  const [window, setWindow] = useState<TimeWindow>(whole);
-  const [cursorMs, setCursorMs] = useState<number | null>(null);
+  const [cursor] = useState(() => createSeriesCursor(remembered?.chosenMs ?? null));
   const [isHelpOpen, setHelpOpen] = useState(false);
   const [isExportOpen, setExportOpen] = useState(false);
   const [isTruthShown, setTruthShown] = useState(false);
-  const [plotWidth, onPlotLayout] = useWidth();
-  const [spineWidth, onSpineLayout] = useWidth();
+  const [stripWidth, onStripLayout] = useWidth();
 
   const seriesQuery = useSeries(group, run.id, columnKeys, bounds);
-  const periodsQuery = usePeriods(group, run.id, window);
-  const spineQuery = useSpine(group, station, run.id, Math.max(0, Math.floor(spineWidth / 3)));
+  const spineQuery = useSpine(group, station, run.id, Math.floor(stripWidth / 3));
   const data = seriesQuery.data ?? null;
+  const starts = data?.startMs ?? noColumn;
+  const ends = data?.endMs ?? noColumn;
+  const settledView = useSettled(view, 250);
 
-  const series = useMemo<PlotSeries[]>(
-    () => (data ? panelKeys.map((key) => plotSeries(data, key)) : []),
-    [data],
+  // where a period was looked at last, this page begins the next time
+  useEffect(
+    () => () => rememberView(run.id, { window: settledView, chosenMs: cursor.chosenMs() }),
+    [run.id, settledView, cursor],
   );
-  const starts = data?.startMs ?? emptyColumn;
-  const ends = data?.endMs ?? emptyColumn;
-  const index = cursorMs === null ? -1 : periodIndexAt(starts, ends, cursorMs);
-  const settledIndex = useDeferredValue(index);
-  const selectedStart = settledIndex >= 0 ? (starts[settledIndex] ?? Number.NaN) : Number.NaN;
-  const detailQuery = usePeriod(group, run.id, selectedStart);
-  const rows = periodsQuery.data ?? [];
-  const row = rows.find((one) => one.startMs === selectedStart) ?? null;
-
-  const nights = useMemo(
-    () =>
-      summary.setUp
-        ? nightsOf(
-            window.fromMs,
-            window.toMs,
-            summary.setUp.setUp.latitudeDeg,
-            summary.setUp.setUp.longitudeDeg,
-          )
-        : [],
-    [summary.setUp, window.fromMs, window.toMs],
-  );
-  const axisWidth = wide ? 58 : 46;
-  const ticksMs = useMemo(
-    () =>
-      plotWidth > axisWidth
-        ? timeTicks({ ...window, width: plotWidth - axisWidth - 1 }, clock.offsetMinutes, 58).map(
-            (tick) => tick.atMs,
-          )
-        : [],
-    [window, plotWidth, axisWidth, clock.offsetMinutes],
-  );
-
+  useEffect(() => {
+    if (data) cursor.propose(tellingPeriod(data, view.fromMs, view.toMs));
+    // proposed once the columns are there, not with each move of the window
+    // eslint-disable-next-line react-hooks/exhaustive-deps
+  }, [data, cursor]);
   const hrefOf = useCallback(
     (startMs: number) => `${periodPath(group, station, startMs)}?run=${run.id}`,
     [group, station, run.id],
@@ -218,349 +212,561 @@ function RunSeries({ group, station, run, runs, summary, shell }: RunSeriesProps
   const step = useCallback(
     (by: number) => {
       if (starts.length === 0) return;
-      const inWindow = starts.findIndex((start) => start >= window.fromMs);
-      const next = Math.max(0, Math.min(starts.length - 1, index < 0 ? Math.max(0, inWindow) : index + by));
+      const shown = cursor.shownMs();
+      const index = shown === null ? -1 : periodIndexAt(starts, ends, shown);
+      const inView = Math.max(
+        0,
+        starts.findIndex((start) => start >= view.fromMs),
+      );
+      const next = Math.max(0, Math.min(starts.length - 1, index < 0 ? inView : index + by));
       const start = starts[next] ?? 0;
-      const end = ends[next] ?? start;
-      setCursorMs((start + end) / 2);
-      if (start < window.fromMs || end > window.toMs) {
-        const length = window.toMs - window.fromMs;
-        setWindow(clampWindow({ fromMs: start - length / 2, toMs: start + length / 2 }, bounds));
-      }
+      cursor.choose(start);
+      if (start < view.fromMs || (ends[next] ?? start) > view.toMs)
+        setView((before) => centredOn(before, start, bounds));
     },
-    [starts, ends, index, window, bounds],
+    [starts, ends, cursor, view, bounds],
   );
   const zoom = useCallback(
-    (factor: number) => {
-      const length = Math.min(
-        bounds.toMs - bounds.fromMs,
-        Math.max(3_600_000, (window.toMs - window.fromMs) * factor),
-      );
-      const centre = cursorMs ?? (window.fromMs + window.toMs) / 2;
-      const share = (centre - window.fromMs) / (window.toMs - window.fromMs);
-      setWindow(
-        clampWindow({ fromMs: centre - share * length, toMs: centre + (1 - share) * length }, bounds),
-      );
-    },
-    [window, cursorMs, bounds],
+    (factor: number) =>
+      setView((before) => {
+        const shown = cursor.shownMs();
+        const isInside = shown !== null && shown >= before.fromMs && shown < before.toMs;
+        const about = isInside ? shown : (before.fromMs + before.toMs) / 2;
+        return zoomedWindow(before, factor, about, bounds, leastWindowMs);
+      }),
+    [cursor, bounds],
+  );
+  const zoomInto = useCallback(
+    (fromMs: number, toMs: number) =>
+      setView(clampWindow({ fromMs, toMs: Math.max(toMs, fromMs + leastWindowMs) }, bounds)),
+    [bounds],
   );
   const move = useCallback(
-    (share: number) => {
-      const length = window.toMs - window.fromMs;
-      setWindow(
-        clampWindow({ fromMs: window.fromMs + share * length, toMs: window.toMs + share * length }, bounds),
-      );
-    },
-    [window, bounds],
+    (share: number) =>
+      setView((before) => {
+        const shift = share * (before.toMs - before.fromMs);
+        return clampWindow({ fromMs: before.fromMs + shift, toMs: before.toMs + shift }, bounds);
+      }),
+    [bounds],
   );
-  const reset = useCallback(() => setWindow({ ...bounds }), [bounds]);
-  const keys = useMemo(
-    () => ({
-      step,
-      zoom,
-      move,
-      reset,
-      open: () => {
-        if (index >= 0) open(starts[index] ?? 0);
-      },
-      help: () => setHelpOpen(true),
-    }),
-    [step, zoom, move, reset, open, index, starts],
+  const reset = useCallback(() => setView({ ...bounds }), [bounds]);
+  const openChosen = useCallback(() => {
+    const shown = cursor.shownMs();
+    if (shown !== null && periodIndexAt(starts, ends, shown) >= 0) open(shown);
+  }, [cursor, starts, ends, open]);
+  useWindowKeys(
+    useMemo(
+      () => ({ step, zoom, move, reset, open: openChosen, help: () => setHelpOpen(true) }),
+      [step, zoom, move, reset, openChosen],
+    ),
   );
-  useWindowKeys(keys);
 
-  const cursor =
-    index >= 0
-      ? {
-          startMs: starts[index] ?? 0,
-          endMs: ends[index] ?? 0,
-          label: clock.periodClock(starts[index] ?? 0, ends[index] ?? 0),
-        }
-      : null;
-  const gradesInWindow = starts.flatMap((start, at) =>
-    (ends[at] ?? start) > window.fromMs && start < window.toMs
-      ? [data?.grades[gradedFlux]?.[at] ?? null]
-      : [],
+  const counts = useMemo(
+    () => (data ? gradeCounts(data, gradedFlux, settledView.fromMs, settledView.toMs) : null),
+    [data, settledView],
   );
+  const words = windowWords(view.fromMs, view.toMs, clock.offsetMinutes);
+  const stripPadding = wide ? space.xl : space.l;
   const spine = (
-    <View onLayout={onSpineLayout} style={{ paddingHorizontal: 0 }}>
-      <Spine
-        data={spineQuery.data ?? null}
-        loading={spineQuery.isPending}
-        width={spineWidth}
-        height={wide ? 78 : 60}
-        offsetMinutes={clock.offsetMinutes}
-        window={window}
-        onWindow={setWindow}
-      />
+    <View style={{ paddingHorizontal: stripPadding, paddingVertical: wide ? 5 : 4 }}>
+      <View onLayout={onStripLayout}>
+        <Spine
+          data={spineQuery.data ?? null}
+          loading={spineQuery.isPending}
+          width={stripWidth}
+          height={wide ? 78 : 56}
+          offsetMinutes={clock.offsetMinutes}
+          window={view}
+          onWindow={setView}
+          named={wide}
+        />
+      </View>
     </View>
   );
-  const isWorking = run.state === 'waiting' || run.state === 'reading' || run.state === 'computing';
+
+  const runChoice =
+    runs.length > 1 ? (
+      <View style={{ minWidth: 200 }}>
+        <ChoiceInput
+          label="Run"
+          value={run.id}
+          options={runs.map((one) => ({
+            value: one.id,
+            label: `run ${one.number} · ${one.recipeName}${one.stale.length > 0 ? ' · stale' : ''}`,
+          }))}
+          onChange={(id) => router.setParams({ run: id })}
+        />
+      </View>
+    ) : null;
 
   return (
-    <AppShell
-      {...shell}
-      chip={
-        <Text variant="small" soft nowrap>
-          run {run.number} · recipe <Text strong>{run.recipeName}</Text> {run.recipeHash.slice(0, 8)}
-        </Text>
-      }
-      strip={
-        <View style={{ paddingHorizontal: wide ? space.xl : space.l, paddingVertical: 4 }}>{spine}</View>
-      }
-      actions={[
-        {
-          key: 'open',
-          label: 'Period',
-          icon: 'evidence',
-          isDisabled: index < 0,
-          onPress: () => index >= 0 && open(starts[index] ?? 0),
-        },
-        { key: 'wider', label: 'Wider', icon: 'minus', onPress: () => zoom(2) },
-        { key: 'closer', label: 'Closer', icon: 'plus', onPress: () => zoom(0.5) },
-        { key: 'export', label: 'Export', icon: 'export', onPress: () => setExportOpen(true) },
-      ]}
-      side={
-        wide ? (
-          <PeriodInspector
-            row={row}
-            detail={detailQuery.data ?? null}
-            index={index}
-            count={starts.length}
-            clock={clock}
-            hrefOf={hrefOf}
-            onStep={step}
-          />
-        ) : undefined
-      }
-    >
-      <View
-        style={{ padding: wide ? space.l : space.m, paddingHorizontal: wide ? 20 : space.l, gap: space.m }}
+    <SeriesCursorContext.Provider value={cursor}>
+      <AppShell
+        {...shell}
+        chip={
+          <Text variant="small" soft nowrap>
+            run {run.number} · recipe{' '}
+            <Text variant="small" strong>
+              {run.recipeName}
+            </Text>{' '}
+            <Text variant="figure" size={12} soft>
+              {run.recipeHash.slice(0, 8)}
+            </Text>
+          </Text>
+        }
+        strip={
+          wide ? (
+            spine
+          ) : (
+            <View>
+              {data ? <CursorVerdict group={group} runId={run.id} data={data} hrefOf={hrefOf} /> : null}
+              {spine}
+            </View>
+          )
+        }
+        actions={[
+          { key: 'wider', label: 'Wider', icon: 'minus', onPress: () => zoom(2) },
+          { key: 'closer', label: 'Closer', icon: 'plus', onPress: () => zoom(0.5) },
+          { key: 'reset', label: 'Everything', icon: 'reset', onPress: reset },
+          { key: 'export', label: 'Export', icon: 'export', onPress: () => setExportOpen(true) },
+        ]}
+        side={
+          wide ? (
+            <View style={webStyle({ position: 'sticky', top: 16 })}>
+              {data ? (
+                <PeriodInspector {...{ group, data, clock, hrefOf }} runId={run.id} onStep={step} />
+              ) : (
+                <LoadingLine label="reading the periods" />
+              )}
+            </View>
+          ) : undefined
+        }
       >
+        {data && !wide ? <CursorBar data={data} clock={clock} onStep={step} /> : null}
+        {data ? <CursorSpoken data={data} clock={clock} /> : null}
         <View
+          style={{
+            paddingVertical: wide ? 10 : space.s,
+            paddingHorizontal: wide ? 20 : space.l,
+            gap: wide ? 10 : space.s,
+          }}
+        >
+          {wide ? (
+            <View
+              style={{
+                flexDirection: 'row',
+                flexWrap: 'wrap',
+                alignItems: 'center',
+                columnGap: space.l,
+                rowGap: space.s,
+              }}
+            >
+              <Text variant="part" level={1}>
+                {words}
+              </Text>
+              <View style={{ flexDirection: 'row', gap: space.xs }}>
+                <IconButton label="Earlier" icon={<Icon name="back" />} onPress={() => move(-0.5)} />
+                <IconButton label="Later" icon={<Icon name="forward" />} onPress={() => move(0.5)} />
+                <IconButton label="Wider" icon={<Icon name="minus" />} onPress={() => zoom(2)} />
+                <IconButton label="Closer" icon={<Icon name="plus" />} onPress={() => zoom(0.5)} />
+                <IconButton label="Everything" icon={<Icon name="reset" />} onPress={reset} />
+              </View>
+              <View style={{ flexGrow: 1 }} />
+              {counts ? <GradeCounts flux={gradedFlux} counts={counts} /> : null}
+            </View>
+          ) : (
+            <h1 className="gb-unseen">Series, {words}</h1>
+          )}
+          <RunState run={run} runsHref={stationPath(group, station, 'runs')} />
+          {seriesQuery.error ? (
+            <ErrorNotice
+              error={seriesQuery.error}
+              safe={`Raw files and run ${run.number} are safe.`}
+              onRetry={() => void seriesQuery.refetch()}
+            />
+          ) : (
+            <Panels
+              {...{ data, view, clock, summary, isTruthShown, zoomInto, open, cursor }}
+              isPending={isWorking}
+            />
+          )}
+          {!wide && counts ? <GradeCounts flux={gradedFlux} counts={counts} /> : null}
+          <Text variant="small" soft>
+            Band: random uncertainty, ± 1 standard deviation. Grey: night. Usable values carry{' '}
+            <GradeMark grade={1} size={12} show="none" />, rejected ones{' '}
+            <GradeMark grade={2} size={12} show="none" /> and are never joined.
+            {summary.station.invented ? ' Station and records are invented, to show how Gustbook works.' : ''}
+          </Text>
+          <View style={{ flexDirection: 'row', flexWrap: 'wrap', gap: space.m, alignItems: 'flex-end' }}>
+            {runChoice}
+            <ButtonRow>
+              {wide ? (
+                <Button
+                  label="Export"
+                  icon={<Icon name="export" size={18} />}
+                  onPress={() => setExportOpen(true)}
+                />
+              ) : null}
+              {data?.truth ? (
+                <Button
+                  label={isTruthShown ? 'Hide the known truth' : 'Show the known truth'}
+                  onPress={() => setTruthShown((shown) => !shown)}
+                />
+              ) : null}
+              {wide ? <Button kind="quiet" label="Keys" onPress={() => setHelpOpen(true)} /> : null}
+            </ButtonRow>
+          </View>
+          <WindowTable
+            {...{ group, clock, hrefOf, bounds }}
+            runId={run.id}
+            window={settledView}
+            count={countIn(data, settledView)}
+          />
+        </View>
+        <Sheet open={isHelpOpen} onClose={() => setHelpOpen(false)} title="Keys and gestures" width={560}>
+          <View style={{ gap: space.m }}>
+            {windowKeyWords.map(([key, meaning]) => (
+              <View key={key} style={{ flexDirection: 'row', gap: space.m }}>
+                <Text variant="figure" size={14} style={{ width: 118 }}>
+                  {key}
+                </Text>
+                <Text style={{ flex: 1 }}>{meaning}</Text>
+              </View>
+            ))}
+          </View>
+        </Sheet>
+        <ExportSheet
+          open={isExportOpen}
+          onClose={() => setExportOpen(false)}
+          group={group}
+          runId={run.id}
+          runNumber={run.number}
+          spans={[
+            { key: 'window', label: 'In view', words, ...view },
+            {
+              key: 'run',
+              label: 'Whole run',
+              words: windowWords(bounds.fromMs, bounds.toMs, clock.offsetMinutes),
+              ...bounds,
+            },
+          ]}
+        />
+      </AppShell>
+    </SeriesCursorContext.Provider>
+  );
+}
+
+function centredOn(window: TimeWindow, atMs: number, bounds: TimeWindow): TimeWindow {
+  const half = (window.toMs - window.fromMs) / 2;
+  return clampWindow({ fromMs: atMs - half, toMs: atMs + half }, bounds);
+}
+
+/** A remembered window, moved where another period was looked at since. */
+function keptInView(window: TimeWindow, atMs: number | null, bounds: TimeWindow): TimeWindow {
+  const isInView = atMs === null || (atMs >= window.fromMs && atMs < window.toMs);
+  return isInView ? clampWindow(window, bounds) : centredOn(window, atMs, bounds);
+}
+
+function countIn(data: SeriesData | null, window: TimeWindow): number {
+  if (!data) return 0;
+  return data.startMs.reduce(
+    (sum, start, at) => sum + Number((data.endMs[at] ?? start) > window.fromMs && start < window.toMs),
+    0,
+  );
+}
+
+/** What there is to know about the run itself: at work, stopped, stale. */
+function RunState({ run, runsHref }: { run: Run; runsHref: string }) {
+  const { colour } = useTheme();
+  const stateWords: Partial<Record<Run['state'], string>> = {
+    waiting: 'waiting for its turn',
+    reading: 'reading raw files',
+    computing: 'computing',
+  };
+  const working = stateWords[run.state];
+  return (
+    <>
+      {working ? (
+        <ProgressLine
+          label={`Run ${run.number}: ${working}`}
+          done={run.periodsDone}
+          total={run.periodsTotal}
+          unit="periods"
+        />
+      ) : null}
+      {run.state === 'failed' || run.state === 'cancelled' ? (
+        <Notice
+          kind={run.state === 'failed' ? 'error' : 'info'}
+          title={
+            run.state === 'failed'
+              ? `Run ${run.number} stopped.`
+              : `Run ${run.number} was stopped by a person.`
+          }
+          safe="The raw files are safe, and so is every period that was computed."
+          next={run.problem ?? 'Start it again from Runs.'}
+          action={{ label: 'Go to runs', onPress: () => router.push(runsHref as Href) }}
+        />
+      ) : null}
+      {run.stale.length > 0 ? (
+        <View
+          role="status"
           style={{
             flexDirection: 'row',
             flexWrap: 'wrap',
             alignItems: 'center',
             columnGap: space.l,
-            rowGap: space.s,
+            paddingHorizontal: space.m,
+            paddingVertical: 4,
+            borderLeftWidth: 3,
+            borderLeftColor: colour.ink,
+            backgroundColor: colour.wash,
           }}
         >
-          <Text variant={wide ? 'section' : 'part'} level={1} strong>
-            {clock.span(window.fromMs, window.toMs)}
+          <Text size={14} style={{ flexShrink: 1 }}>
+            <Text size={14} strong>
+              Run {run.number} is stale.
+            </Text>{' '}
+            {run.stale.join(' ')} Its values stay as they are; computing again makes a new run.
           </Text>
-          {wide ? (
-            <View style={{ flexDirection: 'row', gap: space.xs }}>
-              <IconButton label="Earlier" icon={<Icon name="back" />} onPress={() => move(-0.5)} />
-              <IconButton label="Later" icon={<Icon name="forward" />} onPress={() => move(0.5)} />
-              <IconButton label="Wider" icon={<Icon name="minus" />} onPress={() => zoom(2)} />
-              <IconButton label="Closer" icon={<Icon name="plus" />} onPress={() => zoom(0.5)} />
-              <IconButton label="Everything" icon={<Icon name="reset" />} onPress={reset} />
-            </View>
-          ) : null}
-          {runs.length > 1 ? (
-            <ChoiceInput
-              label="Run"
-              value={run.id}
-              options={runs.map((one) => ({
-                value: one.id,
-                label: `run ${one.number} · ${one.recipeName}${one.stale.length > 0 ? ' · stale' : ''}`,
-              }))}
-              onChange={(id) => router.setParams({ run: id })}
-            />
-          ) : null}
-          <View style={{ flexGrow: 1 }} />
-          <GradeCounts flux={gradedFlux} grades={gradesInWindow} />
+          <TextLink standing label="Go to runs" href={runsHref} />
         </View>
-        {summary.station.invented ? (
-          <Text variant="small" soft>
-            Invented records of an invented station, made to show how Gustbook works.
-          </Text>
-        ) : null}
-        {isWorking ? (
-          <ProgressLine
-            label={`Run ${run.number}: ${run.state === 'computing' ? 'computing' : run.state === 'reading' ? 'reading raw files' : 'waiting'}`}
-            done={run.periodsDone}
-            total={run.periodsTotal}
-            unit="periods"
-          />
-        ) : null}
-        {run.state === 'failed' ? (
-          <Notice
-            kind="error"
-            title={`Run ${run.number} stopped.`}
-            safe="The raw files are safe, and so is every period that was computed."
-            next={run.problem ?? 'Start it again from Runs.'}
-          />
-        ) : null}
-        {run.stale.length > 0 ? (
-          <Notice
-            kind="info"
-            title="This run is stale."
-            safe={run.stale.join(' ')}
-            next="Its values stay as they are; computing again makes a new run."
-            action={{
-              label: 'Go to runs',
-              onPress: () => router.push(stationPath(group, station, 'runs') as Href),
-            }}
-          />
-        ) : null}
-        {seriesQuery.error ? (
-          <ErrorNotice error={seriesQuery.error} onRetry={() => void seriesQuery.refetch()} />
-        ) : null}
-        <View onLayout={onPlotLayout} style={{ gap: wide ? 4 : 8 }}>
-          {plotWidth > 0 && data
-            ? series.map((one, at) => {
-                const entry = quantity(one.key);
-                const dash = traceDashes[at % traceDashes.length] ?? [];
-                const value = index >= 0 ? (one.value[seriesIndex(one, starts[index] ?? 0)] ?? null) : null;
-                const cursorAt = index >= 0 ? seriesIndex(one, starts[index] ?? 0) : -1;
-                const upper = cursorAt >= 0 ? (one.upper[cursorAt] ?? null) : null;
-                return (
-                  <View key={one.key}>
-                    <View style={{ flexDirection: 'row', alignItems: 'baseline', gap: space.s }}>
-                      <Text variant="label" size={15}>
-                        <UnitText>{entry.symbol}</UnitText>
-                      </Text>
-                      <Text variant="small" soft>
-                        {entry.label}
-                      </Text>
-                      <Text variant="figure" size={11} soft>
-                        <UnitText>{entry.unit}</UnitText>
-                      </Text>
-                      <DashSample colour={colour.traces[at % 5] ?? colour.ink} dash={dash} />
-                      <View style={{ flex: 1 }} />
-                      {!wide && index >= 0 ? (
-                        <View style={{ flexDirection: 'row', gap: 6, alignItems: 'center' }}>
-                          {entry.gradedBy ? (
-                            <GradeMark grade={gradeValue(one.grade[cursorAt])} show="none" />
-                          ) : null}
-                          <Text variant="figure" size={14}>
-                            {value === null
-                              ? 'no data'
-                              : `${formatNumber(value, entry.decimals)}${upper === null ? '' : ` ${formatUncertainty(upper - value, entry.decimals)}`}`}
-                          </Text>
-                        </View>
-                      ) : null}
-                    </View>
-                    <SeriesPanel
-                      series={one}
-                      trace={at}
-                      window={window}
-                      nights={nights}
-                      width={plotWidth}
-                      height={panelHeight(one.key, wide)}
-                      ticksMs={ticksMs}
-                      cursorIndex={cursorAt}
-                      onCursor={setCursorMs}
-                      onOpen={open}
-                      onZoom={(fromMs, toMs) => {
-                        if (toMs - fromMs > 1_800_000) setWindow(clampWindow({ fromMs, toMs }, bounds));
-                      }}
-                      readout={wide}
-                      axisWidth={axisWidth}
-                      showTruth={isTruthShown}
-                    />
-                  </View>
-                );
-              })
-            : null}
-          {plotWidth > 0 && data ? (
-            <TimeAxis
-              window={window}
-              width={plotWidth}
-              axisWidth={axisWidth}
-              offsetMinutes={clock.offsetMinutes}
-              cursor={cursor}
-            />
-          ) : seriesQuery.isPending ? (
-            <LoadingLine label="reading the series" />
-          ) : null}
-        </View>
-        <Text variant="small" soft>
-          Band: random uncertainty, ± 1 standard deviation. Grey: night. Usable values carry ▲, rejected ones
-          ✕ and are never joined.
-        </Text>
-        <ButtonRow>
-          <Button
-            label="Export"
-            icon={<Icon name="export" size={18} />}
-            onPress={() => setExportOpen(true)}
-          />
-          {data?.truth ? (
-            <Button
-              label={isTruthShown ? 'Hide the known truth' : 'Show the known truth'}
-              onPress={() => setTruthShown((shown) => !shown)}
-            />
-          ) : null}
-          {wide ? <Button kind="quiet" label="Keys" onPress={() => setHelpOpen(true)} /> : null}
-        </ButtonRow>
-        {!wide && row ? (
-          <Section title="Under the cursor">
-            <PeriodInspector
-              row={row}
-              detail={detailQuery.data ?? null}
-              index={index}
-              count={starts.length}
-              clock={clock}
-              hrefOf={hrefOf}
-              onStep={step}
-            />
-          </Section>
-        ) : null}
-        <Section title="Periods" subtitle={`${rows.length} in ${clock.span(window.fromMs, window.toMs)}`}>
-          {periodsQuery.isPending ? (
-            <LoadingLine label="reading the periods" />
-          ) : rows.length > 400 ? (
-            <Text soft>More than 400 periods are in view: zoom closer to read them as a table.</Text>
-          ) : (
-            <PeriodTable periods={rows} clock={clock} hrefOf={hrefOf} />
-          )}
-        </Section>
-      </View>
-      <Sheet open={isHelpOpen} onClose={() => setHelpOpen(false)} title="Keys">
-        <View style={{ gap: space.s }}>
-          {windowKeyWords.map(([key, words]) => (
-            <View key={key} style={{ flexDirection: 'row', gap: space.m }}>
-              <Text variant="figure" style={{ width: 72 }}>
-                {key}
-              </Text>
-              <Text style={{ flex: 1 }}>{words}</Text>
-            </View>
-          ))}
-        </View>
-      </Sheet>
-      <ExportSheet
-        open={isExportOpen}
-        onClose={() => setExportOpen(false)}
-        group={group}
-        runId={run.id}
-        runNumber={run.number}
-        spanWords={clock.span(window.fromMs, window.toMs)}
-        fromMs={window.fromMs}
-        toMs={window.toMs}
-      />
-    </AppShell>
+      ) : null}
+    </>
   );
 }
 
-const emptyColumn: number[] = [];
+interface PanelsProps {
+  data: SeriesData | null;
+  view: TimeWindow;
+  clock: ReturnType<typeof useClock>;
+  summary: StationSummary;
+  isTruthShown: boolean;
+  isPending: boolean;
+  zoomInto: (fromMs: number, toMs: number) => void;
+  open: (startMs: number) => void;
+  cursor: ReturnType<typeof createSeriesCursor>;
+}
 
-/** Plot columns carry extra entries for holes between periods, so indices differ from those of the run's columns. */
-function seriesIndex(series: PlotSeries, startMs: number): number {
-  return periodIndexAt(series.startMs, series.endMs, startMs);
+/** Fluxes over one time axis, wind and air over a second one, all under the same cursor. */
+function Panels({
+  data,
+  view,
+  clock,
+  summary,
+  isTruthShown,
+  isPending,
+  zoomInto,
+  open,
+  cursor,
+}: PanelsProps) {
+  const wide = useWide();
+  const { colour } = useTheme();
+  const [width, onLayout] = useWidth();
+  const nameWidth = wide ? 96 : 0;
+  const axisWidth = wide ? 46 : 44;
+  const panelWidth = width - nameWidth;
+  const all = useMemo(
+    () => new Map([...fluxPanels, ...airPanels].map((key) => [key, data ? plotSeries(data, key) : null])),
+    [data],
+  );
+  const column = all.get('co2Flux') ?? null;
+  const setUp = summary.setUp?.setUp ?? null;
+  // nights of whole days, so that they are not computed anew with each move
+  const firstDay = Math.floor(view.fromMs / dayMs);
+  const lastDay = Math.ceil(view.toMs / dayMs);
+  const nights = useMemo(
+    () =>
+      setUp && lastDay - firstDay <= 62
+        ? nightsOf((firstDay - 1) * dayMs, (lastDay + 1) * dayMs, setUp.latitudeDeg, setUp.longitudeDeg)
+        : [],
+    [setUp, firstDay, lastDay],
+  );
+  const ticksMs = useMemo(
+    () =>
+      panelWidth > axisWidth
+        ? gridInstants({ ...view, width: panelWidth - axisWidth - 1 }, clock.offsetMinutes)
+        : [],
+    [view, panelWidth, axisWidth, clock.offsetMinutes],
+  );
+  const startAt = useCallback(
+    (atMs: number): number | null => {
+      const index = column ? periodIndexAt(column.startMs, column.endMs, atMs) : -1;
+      return index < 0 ? null : (column?.startMs[index] ?? null);
+    },
+    [column],
+  );
+  const onHover = useCallback(
+    (atMs: number | null) => cursor.hover(atMs === null ? null : startAt(atMs)),
+    [cursor, startAt],
+  );
+  const onChoose = useCallback(
+    (atMs: number) => {
+      const start = startAt(atMs);
+      if (start !== null) cursor.choose(start);
+    },
+    [cursor, startAt],
+  );
+  const onOpen = useCallback(
+    (atMs: number) => {
+      const index = data ? periodIndexAt(data.startMs, data.endMs, atMs) : -1;
+      const start = data?.startMs[index];
+      if (start === undefined) return;
+      cursor.choose(start);
+      open(start);
+    },
+    [data, cursor, open],
+  );
+  const periodAt = useCallback(
+    (startMs: number) => {
+      const index = column ? periodIndexAt(column.startMs, column.endMs, startMs) : -1;
+      if (!column || index < 0) return null;
+      const from = column.startMs[index] ?? 0;
+      const to = column.endMs[index] ?? from;
+      return { middleMs: (from + to) / 2, label: clock.periodClock(from, to) };
+    },
+    [column, clock],
+  );
+
+  const panel = (key: (typeof fluxPanels)[number] | (typeof airPanels)[number]) => {
+    const series = all.get(key);
+    const height = panelHeight(key, wide);
+    return (
+      <View key={key} style={{ flexDirection: wide ? 'row' : 'column' }}>
+        {wide ? (
+          <PanelName quantityKey={key} width={nameWidth} />
+        ) : (
+          <View
+            style={{
+              flexDirection: 'row',
+              justifyContent: 'space-between',
+              alignItems: 'center',
+              minHeight: 21,
+              paddingLeft: axisWidth,
+            }}
+          >
+            <PanelHead quantityKey={key} />
+            {series ? <PanelValue series={series} /> : null}
+          </View>
+        )}
+        {series && panelWidth > axisWidth ? (
+          <SeriesPanel
+            series={series}
+            window={view}
+            nights={nights}
+            width={panelWidth}
+            height={height}
+            ticksMs={ticksMs}
+            onHover={onHover}
+            onChoose={onChoose}
+            onOpen={onOpen}
+            onZoom={zoomInto}
+            readout={wide}
+            axisWidth={axisWidth}
+            showTruth={isTruthShown}
+            isPending={isPending}
+          />
+        ) : (
+          <EmptyPanel
+            width={panelWidth}
+            height={height}
+            axisWidth={axisWidth}
+            words={key === 'co2Flux' ? 'reading the series' : ''}
+          />
+        )}
+      </View>
+    );
+  };
+  const axis =
+    panelWidth > axisWidth ? (
+      <View style={{ marginLeft: nameWidth }}>
+        <TimeAxis
+          window={view}
+          width={panelWidth}
+          axisWidth={axisWidth}
+          offsetMinutes={clock.offsetMinutes}
+          periodAt={periodAt}
+        />
+      </View>
+    ) : null;
+  return (
+    <View onLayout={onLayout} style={{ gap: wide ? 6 : 2 }}>
+      {fluxPanels.map(panel)}
+      {axis}
+      {isTruthShown ? (
+        <View
+          style={{
+            flexDirection: 'row',
+            alignItems: 'center',
+            gap: space.s,
+            paddingLeft: nameWidth + axisWidth,
+          }}
+        >
+          <svg width={38} height={8} aria-hidden>
+            <line x1={0} x2={38} y1={4} y2={4} stroke={colour.ink} strokeWidth={1} />
+          </svg>
+          <Text variant="small">known truth (invented)</Text>
+        </View>
+      ) : null}
+      <View style={{ height: space.s }} />
+      {airPanels.map(panel)}
+      {axis}
+    </View>
+  );
 }
 
 function panelHeight(key: string, wide: boolean): number {
-  const isFlux = quantity(key).group === 'flux';
-  if (wide) return key === 'co2Flux' ? 168 : isFlux ? 128 : 88;
-  return key === 'co2Flux' ? 150 : isFlux ? 112 : 84;
+  if (key === 'co2Flux') return wide ? 158 : 116;
+  if (key === 'latentHeat' || key === 'sensibleHeat') return wide ? 124 : 86;
+  if (key === 'ustar') return wide ? 108 : 76;
+  return wide ? 100 : 84;
 }
 
-function DashSample({ colour, dash }: { colour: string; dash: readonly number[] }) {
+interface WindowTableProps {
+  group: string;
+  runId: string;
+  window: TimeWindow;
+  /** Periods in the window, known from the columns. */
+  count: number;
+  clock: ReturnType<typeof useClock>;
+  hrefOf: (startMs: number) => string;
+}
+
+/** The periods in view as a table, while they are few enough to read. */
+function WindowTable({ group, runId, window, count, clock, hrefOf }: WindowTableProps) {
+  const isReadable = count > 0 && count <= mostTableRows;
+  const query = usePeriods(group, isReadable ? runId : null, window);
+  const [shown, setShown] = useState<'all' | 'flagged'>('all');
+  const all = query.data ?? [];
+  const flagged = all.filter(isFlagged);
+  const rows = shown === 'all' ? all : flagged;
   return (
-    <svg width={34} height={6} aria-hidden style={{ alignSelf: 'center' }}>
-      <line x1={0} x2={34} y1={3} y2={3} stroke={colour} strokeWidth={2} strokeDasharray={dash.join(' ')} />
-    </svg>
+    <Section
+      title="Periods"
+      subtitle={`${formatPlural(count, 'period')} in view, ${windowWords(window.fromMs, window.toMs, clock.offsetMinutes)}`}
+    >
+      {count === 0 ? (
+        <Text soft>No period has been computed in this window.</Text>
+      ) : !isReadable ? (
+        <Text soft>More than {mostTableRows} periods are in view. Zoom closer to read them as a table.</Text>
+      ) : query.error ? (
+        <ErrorNotice error={query.error} onRetry={() => void query.refetch()} />
+      ) : query.isPending ? (
+        <LoadingLine label="reading the periods" />
+      ) : (
+        <>
+          <SegmentChoice
+            label="Rows"
+            hideLabel
+            value={shown}
+            options={[
+              { value: 'all', label: `All ${all.length}` },
+              { value: 'flagged', label: `Not all good ${flagged.length}` },
+            ]}
+            onChange={setShown}
+          />
+          <PeriodTable periods={rows} clock={clock} hrefOf={hrefOf} />
+        </>
+      )}
+    </Section>
   );
 }

@@ -1,6 +1,16 @@
+import { useState } from 'react';
 import { View } from 'react-native';
-import { Sheet, Text } from '../primitives';
-import { space } from '../tokens';
+import { Icon, SegmentChoice, Sheet, Text, UnitText } from '../primitives';
+import { frame, radius, space, useTheme, useWide } from '../tokens';
+
+export interface ExportSpan {
+  key: string;
+  label: string;
+  /** "14–17 June 2027". */
+  words: string;
+  fromMs: number;
+  toMs: number;
+}
 
 export interface ExportSheetProps {
   open: boolean;
@@ -8,49 +18,83 @@ export interface ExportSheetProps {
   group: string;
   runId: string;
   runNumber: number;
-  /** Words of the span that is exported. */
-  spanWords: string;
-  fromMs: number;
-  toMs: number;
+  /** Spans to choose from; the first is chosen at first. */
+  spans: readonly ExportSpan[];
+}
+
+export function exportAddress(group: string, runId: string, format: string, span: ExportSpan): string {
+  return (
+    `/api/groups/${encodeURIComponent(group)}/runs/${runId}/export` +
+    `?format=${format}&fromMs=${Math.round(span.fromMs)}&toMs=${Math.round(span.toMs)}`
+  );
 }
 
 /** The two files a run can leave as, with what each is for. */
-export function ExportSheet(props: ExportSheetProps) {
-  const address = (format: string) =>
-    `/api/groups/${props.group}/runs/${props.runId}/export?format=${format}&fromMs=${props.fromMs}&toMs=${props.toMs}`;
+export function ExportSheet({ open, onClose, group, runId, runNumber, spans }: ExportSheetProps) {
+  const [chosen, setChosen] = useState(spans[0]?.key ?? '');
+  const span = spans.find((one) => one.key === chosen) ?? spans[0];
+  if (!span) return null;
   return (
-    <Sheet
-      open={props.open}
-      onClose={props.onClose}
-      title="Export"
-      subtitle={`Run ${props.runNumber}, ${props.spanWords}`}
-    >
-      <View style={{ gap: space.l }}>
-        <View style={{ gap: space.xs }}>
-          <Text strong>For a flux network</Text>
-          <Text variant="small" soft>
-            Exchange names, local standard time, -9999 where a value is missing, downward momentum negative.
-            Not filtered by u*, not gap-filled.
+    <Sheet open={open} onClose={onClose} title="Export" subtitle={`Run ${runNumber}, ${span.words}`}>
+      <View style={{ gap: space.xl }}>
+        <SegmentChoice
+          label="Span"
+          value={span.key}
+          options={spans.map(({ key, label }) => ({ value: key, label }))}
+          onChange={setChosen}
+        />
+        <View style={{ gap: space.s, alignItems: 'flex-start' }}>
+          <Text variant="part" level={3}>
+            For a flux network
           </Text>
-          <a href={address('exchange')} download>
-            <Text variant="label" style={{ textDecorationLine: 'underline' }}>
-              Save exchange CSV
-            </Text>
-          </a>
+          <Text>
+            <UnitText>
+              Exchange names and units, local standard time, −9999 where a value is missing, downward momentum
+              negative. Not filtered by u*, not gap-filled.
+            </UnitText>
+          </Text>
+          <Download label="Save exchange CSV" href={exportAddress(group, runId, 'exchange', span)} />
         </View>
-        <View style={{ gap: space.xs }}>
-          <Text strong>For your own work</Text>
-          <Text variant="small" soft>
-            Every quantity with a row of units, grades and reasons in words, times in UTC and station time,
-            full precision.
+        <View style={{ gap: space.s, alignItems: 'flex-start' }}>
+          <Text variant="part" level={3}>
+            For your own work
           </Text>
-          <a href={address('plain')} download>
-            <Text variant="label" style={{ textDecorationLine: 'underline' }}>
-              Save plain CSV
-            </Text>
-          </a>
+          <Text>
+            Every quantity with a row of units and the grade of each flux, times in UTC, full precision, empty
+            where a value is missing.
+          </Text>
+          <Download label="Save plain CSV" href={exportAddress(group, runId, 'plain', span)} />
         </View>
       </View>
     </Sheet>
+  );
+}
+
+/** A link that the browser saves instead of opening. */
+function Download({ label, href }: { label: string; href: string }) {
+  const { colour } = useTheme();
+  const wide = useWide();
+  return (
+    <a
+      href={href}
+      download
+      style={{
+        display: 'inline-flex',
+        alignItems: 'center',
+        gap: 8,
+        minHeight: wide ? frame.pointerTarget : frame.phoneTarget,
+        padding: '0 16px',
+        boxSizing: 'border-box',
+        border: `1px solid ${colour.ink}`,
+        borderRadius: radius,
+        color: colour.ink,
+        textDecoration: 'none',
+      }}
+    >
+      <Icon name="export" size={18} />
+      <Text variant="label" size={14}>
+        {label}
+      </Text>
+    </a>
   );
 }

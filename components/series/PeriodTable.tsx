@@ -1,8 +1,10 @@
+import { memo } from 'react';
 import { View } from 'react-native';
 import { fluxLabels, quantity } from '../../processing/catalogue';
 import type { FluxKey } from '../../processing/state';
 import type { PeriodRow } from '../../server/contract/api';
-import { formatQuantity, formatQuantityUncertainty } from '../format/quantities';
+import { formatQuantity } from '../format/quantities';
+import { startOfDayMs } from '../format/times';
 import type { StationClock } from '../format/useClock';
 import { DataTable, GradeMark, Text, TextLink, UnitText } from '../primitives';
 import type { DataColumn } from '../primitives';
@@ -14,28 +16,21 @@ export interface PeriodTableProps {
   hrefOf: (startMs: number) => string;
 }
 
-function FluxCell({
-  row,
-  flux,
-  withUncertainty,
-}: {
-  row: PeriodRow;
-  flux: FluxKey;
-  withUncertainty: boolean;
-}) {
+/** Whether any flux of a period is worse than good, or missing. */
+export function isFlagged(row: Pick<PeriodRow, 'grades'>): boolean {
+  return shownFluxes.some((flux) => fluxGrade(row, flux) !== 0);
+}
+
+function FluxCell({ row, flux }: { row: PeriodRow; flux: FluxKey }) {
   const { valueKey } = fluxLabels[flux];
-  const { uncertaintyKey } = quantity(valueKey);
   return (
     <View style={{ flexDirection: 'row', gap: 8, justifyContent: 'flex-end', alignItems: 'center' }}>
       <Text variant="figure" size={14}>
         {formatQuantity(valueKey, row.values[valueKey])}
       </Text>
-      {withUncertainty && uncertaintyKey ? (
-        <Text variant="figure" size={13} soft style={{ minWidth: 58 }} align="right">
-          {formatQuantityUncertainty(valueKey, row.values[uncertaintyKey])}
-        </Text>
-      ) : null}
-      <GradeMark grade={fluxGrade(row, flux)} />
+      <View style={{ width: 28 }}>
+        <GradeMark grade={fluxGrade(row, flux)} />
+      </View>
     </View>
   );
 }
@@ -46,53 +41,99 @@ const outcomeWords: Partial<Record<PeriodRow['outcome'], string>> = {
   crossing: 'set-up changed within it',
 };
 
-function finding(row: PeriodRow): string {
-  const special = outcomeWords[row.outcome];
+/** What decided the worst grade of a period; '' where all is good. */
+export function mainFindingWords(row: PeriodRow): string {
+  if (row.outcome === 'empty' || row.outcome === 'crossing') return outcomeWords[row.outcome] ?? '';
   const flux = verdictFlux(row);
   const main = row.mainFinding[flux];
-  if (main) return `${fluxLabels[flux].symbol}: ${main}`;
-  return special ?? '';
+  if (!main) return outcomeWords[row.outcome] ?? '';
+  return row.outcome === 'stopped' ? main : `${fluxLabels[flux].symbol}: ${main}`;
+}
+
+function Head({ symbol, unit }: { symbol: string; unit: string }) {
+  return (
+    <>
+      <UnitText>{symbol}</UnitText>, <UnitText>{unit}</UnitText>
+    </>
+  );
 }
 
 /** The periods of a window as a table; each row leads to its page. */
-export function PeriodTable({ periods, clock, hrefOf }: PeriodTableProps) {
+export const PeriodTable = memo(function PeriodTable({ periods, clock, hrefOf }: PeriodTableProps) {
+  const first = periods[0];
+  const last = periods.at(-1);
+  const offset = clock.offsetMinutes;
+  const hasDays =
+    first !== undefined &&
+    last !== undefined &&
+    startOfDayMs(first.startMs, offset) !== startOfDayMs(last.startMs, offset);
   const columns: DataColumn<PeriodRow>[] = [
+    ...(hasDays
+      ? [
+          {
+            key: 'day',
+            head: 'Day',
+            width: 96,
+            cell: (row: PeriodRow) => (
+              <Text variant="small" soft nowrap>
+                {clock.day(row.startMs).replace(/ \d{4}$/, '')}
+              </Text>
+            ),
+          },
+        ]
+      : []),
     {
       key: 'time',
       head: `Period, ${clock.zone}`,
+      // the joiner after the dash keeps both ends on one line
       cell: (row) => (
-        <TextLink label={clock.periodClock(row.startMs, row.endMs)} href={hrefOf(row.startMs)} />
+        <TextLink
+          label={clock.periodClock(row.startMs, row.endMs).replace('\u2013', '\u2013\u2060')}
+          ariaLabel={clock.period(row.startMs, row.endMs)}
+          href={hrefOf(row.startMs)}
+        />
       ),
     },
     ...shownFluxes.map((flux): DataColumn<PeriodRow> => ({
       key: flux,
-      head: `${fluxLabels[flux].symbol}, ${quantity(fluxLabels[flux].valueKey).unit.replace('-2', '⁻²').replace('-1', '⁻¹')}`,
+      head: (
+        <span style={{ paddingRight: 28 }}>
+          <Head symbol={fluxLabels[flux].symbol} unit={quantity(fluxLabels[flux].valueKey).unit} />
+        </span>
+      ),
       align: 'right',
-      cell: (row) => <FluxCell row={row} flux={flux} withUncertainty />,
+      cell: (row) => <FluxCell row={row} flux={flux} />,
     })),
     {
       key: 'wind',
-      head: 'wind',
+      head: <Head symbol="wind" unit="m s-1" />,
       align: 'right',
       cell: (row) => (
         <Text variant="figure" size={14}>
-          {row.values.windSpeed == null
-            ? ''
-            : `${formatQuantity('windSpeed', row.values.windSpeed)} m/s ${formatQuantity('windDirection', row.values.windDirection)}°`}
+          {formatQuantity('windSpeed', row.values.windSpeed)}
         </Text>
       ),
     },
     {
-      key: 'temperature',
-      head: 'air, °C',
+      key: 'direction',
+      head: 'from, °',
       align: 'right',
       cell: (row) => (
         <Text variant="figure" size={14}>
-          {formatQuantity('airTemperature', row.values.airTemperature)}
+          {formatQuantity('windDirection', row.values.windDirection)}
         </Text>
       ),
     },
-    { key: 'finding', head: 'what decided', cell: (row) => <Text variant="small">{finding(row)}</Text> },
+    {
+      key: 'finding',
+      head: 'What decided',
+      width: '30%',
+      cell: (row) => (
+        <Text variant="small">
+          <UnitText>{mainFindingWords(row)}</UnitText>
+        </Text>
+      ),
+    },
   ];
   return (
     <DataTable
@@ -103,7 +144,12 @@ export function PeriodTable({ periods, clock, hrefOf }: PeriodTableProps) {
       phoneRow={(row) => (
         <View style={{ gap: 4 }}>
           <View style={{ flexDirection: 'row', justifyContent: 'space-between', alignItems: 'center' }}>
-            <TextLink standing label={clock.periodClock(row.startMs, row.endMs)} href={hrefOf(row.startMs)} />
+            <TextLink
+              standing
+              label={clock.periodClock(row.startMs, row.endMs)}
+              ariaLabel={clock.period(row.startMs, row.endMs)}
+              href={hrefOf(row.startMs)}
+            />
             <Text variant="small" soft>
               {clock.day(row.startMs)}
             </Text>
@@ -114,17 +160,17 @@ export function PeriodTable({ periods, clock, hrefOf }: PeriodTableProps) {
                 <Text variant="label">
                   <UnitText>{fluxLabels[flux].symbol}</UnitText>
                 </Text>
-                <FluxCell row={row} flux={flux} withUncertainty={false} />
+                <FluxCell row={row} flux={flux} />
               </View>
             ))}
           </View>
-          {finding(row) ? (
+          {mainFindingWords(row) ? (
             <Text variant="small" soft>
-              {finding(row)}
+              <UnitText>{mainFindingWords(row)}</UnitText>
             </Text>
           ) : null}
         </View>
       )}
     />
   );
-}
+});

@@ -1,78 +1,114 @@
-import { useState } from 'react';
+import { useId, useState } from 'react';
 import { Pressable, View } from 'react-native';
 import { seriesLabels } from '../../processing/catalogue';
 import type { SeriesKey } from '../../processing/state';
+import { alreadyStopped } from '../../processing/steps/ledger';
 import type { PeriodDetail } from '../../server/contract/api';
-import { formatCount, formatNumber } from '../format/numbers';
+import { formatCount, formatPlural } from '../format/numbers';
 import { FactRow, Icon, Text, UnitText } from '../primitives';
 import { space, useTheme, useWide } from '../tokens';
+import { ledgerFact } from './ledger-words';
 import { stepTitles } from './period-view';
 
 type Entry = PeriodDetail['ledger'][number];
 
 /** What each step did to this period, in order; a row opens to its settings, counts and changes. */
-export function StepLedger({ entries }: { entries: readonly Entry[] }) {
+export function StepLedger({ period }: { period: Pick<PeriodDetail, 'ledger' | 'reasons'> }) {
+  const isSkipped = (entry: Entry) => entry.summary === alreadyStopped;
+  const skipped = period.ledger.filter(isSkipped).length;
   return (
     <View>
-      {entries.map((entry, index) => (
-        <StepRow key={`${entry.step}-${index}`} entry={entry} number={index + 1} />
-      ))}
+      <View role="list" aria-label="Steps">
+        {period.ledger.map((entry, index) =>
+          isSkipped(entry) ? null : (
+            <StepRow
+              key={`${entry.step}-${index}`}
+              entry={entry}
+              reasons={period.reasons}
+              number={index + 1}
+            />
+          ),
+        )}
+      </View>
+      {skipped > 0 ? (
+        <Text soft style={{ paddingTop: space.m }}>
+          {formatPlural(skipped, 'other step')} had nothing to do: the period was stopped before.
+        </Text>
+      ) : null}
     </View>
   );
 }
 
-function StepRow({ entry, number }: { entry: Entry; number: number }) {
+function StepRow({
+  entry,
+  reasons,
+  number,
+}: {
+  entry: Entry;
+  reasons: PeriodDetail['reasons'];
+  number: number;
+}) {
   const { colour } = useTheme();
   const wide = useWide();
   const [isOpen, setOpen] = useState(false);
-  const counts = Object.entries(entry.counts ?? {});
-  return (
-    <View style={{ borderBottomWidth: 1, borderBottomColor: colour.hair }}>
-      <Pressable
-        role="button"
-        aria-expanded={isOpen}
-        onPress={() => setOpen((open) => !open)}
-        style={{
-          flexDirection: 'row',
-          gap: space.m,
-          paddingVertical: 10,
-          minHeight: 48,
-          alignItems: 'flex-start',
-        }}
-      >
-        <Text variant="figure" soft size={13} style={{ width: 22, paddingTop: 2 }} align="right">
-          {number}
+  const panelId = `step-${useId()}`;
+  const settings = Object.entries(entry.parameters).map(([key, value]) => ledgerFact(key, value, reasons));
+  const found = Object.entries(entry.changes).map(([key, value]) => ledgerFact(key, value, reasons));
+  const isEmpty = settings.length === 0 && found.length === 0 && Object.keys(entry.counts ?? {}).length === 0;
+  const words = (
+    <>
+      <Text variant="figure" soft size={13} style={{ width: 22, paddingTop: 1 }} align="right">
+        {number}
+      </Text>
+      <View style={{ flex: 1, flexDirection: wide ? 'row' : 'column', columnGap: space.l, rowGap: 2 }}>
+        <Text variant="label" size={14} style={{ width: wide ? 230 : undefined, paddingTop: 1 }}>
+          {stepTitles[entry.step] ?? entry.step}
         </Text>
-        <View style={{ flex: 1, flexDirection: wide ? 'row' : 'column', columnGap: space.l, rowGap: 2 }}>
-          <Text variant="label" size={14} style={{ width: wide ? 220 : undefined, paddingTop: 1 }}>
-            {stepTitles[entry.step] ?? entry.step}
-          </Text>
-          <Text variant="small" style={{ flex: wide ? 1 : undefined }}>
-            {entry.summary}
-          </Text>
-        </View>
-        <Icon name={isOpen ? 'up' : 'down'} size={16} />
-      </Pressable>
+        <Text size={14} soft={isEmpty} style={{ flex: wide ? 1 : undefined }}>
+          <UnitText>{entry.summary}</UnitText>
+        </Text>
+      </View>
+    </>
+  );
+  const rowStyle = {
+    flexDirection: 'row' as const,
+    gap: space.m,
+    paddingVertical: 10,
+    minHeight: wide ? 42 : 48,
+    alignItems: 'flex-start' as const,
+  };
+  return (
+    <View role="listitem" style={{ borderBottomWidth: 1, borderBottomColor: colour.hair }}>
+      {isEmpty ? (
+        <View style={[rowStyle, { paddingRight: 28 }]}>{words}</View>
+      ) : (
+        <Pressable
+          role="button"
+          aria-expanded={isOpen}
+          aria-controls={panelId}
+          onPress={() => setOpen((open) => !open)}
+          style={rowStyle}
+        >
+          {words}
+          <Icon name={isOpen ? 'up' : 'down'} size={16} />
+        </Pressable>
+      )}
       {isOpen ? (
-        <View style={{ paddingLeft: 34, paddingBottom: space.m, gap: space.m, maxWidth: 720 }}>
-          {counts.length > 0 ? (
-            <Facts
-              title="Valid samples, before and after"
-              rows={counts.map(([series, count]) => [
-                seriesLabels[series as SeriesKey]?.label ?? series,
-                `${formatCount(count.before)} to ${formatCount(count.after)}`,
-              ])}
-            />
-          ) : null}
-          <Facts
-            title="Settings"
-            rows={Object.entries(entry.parameters).map(([key, value]) => [key, written(value)])}
-          />
-          <Facts
-            title="What it found"
-            rows={Object.entries(entry.changes).map(([key, value]) => [key, written(value)])}
-          />
-          <Text variant="small" soft>
+        <View
+          nativeID={panelId}
+          style={{
+            paddingLeft: 34,
+            paddingBottom: space.l,
+            columnGap: space.xxl,
+            rowGap: space.l,
+            flexDirection: wide ? 'row' : 'column',
+            flexWrap: wide ? 'wrap' : 'nowrap',
+          }}
+        >
+          <Counts counts={entry.counts ?? {}} />
+          <Facts title="Settings" rows={settings} />
+          <Facts title="What it found" rows={found} />
+          <Text variant="small" soft style={{ width: '100%' }}>
             Version {entry.version} of this step.
           </Text>
         </View>
@@ -81,40 +117,50 @@ function StepRow({ entry, number }: { entry: Entry; number: number }) {
   );
 }
 
-function Facts({ title, rows }: { title: string; rows: (readonly [string, string])[] }) {
+/** Valid samples in and out; one line where nothing was taken. */
+function Counts({ counts }: { counts: NonNullable<Entry['counts']> }) {
+  const rows = Object.entries(counts);
+  if (rows.length === 0) return null;
+  const [first] = rows;
+  const isUntouched = rows.every(
+    ([, count]) => count.before === count.after && count.after === first?.[1].after,
+  );
+  return (
+    <Facts
+      title="Valid samples"
+      rows={
+        isUntouched
+          ? [{ label: 'Each series', value: `${formatCount(first?.[1].after)}, none taken` }]
+          : rows.map(([series, { before, after }]) => ({
+              label: seriesLabels[series as SeriesKey]?.label ?? series,
+              value:
+                before === after ? formatCount(after) : `${formatCount(after)} of ${formatCount(before)}`,
+            }))
+      }
+    />
+  );
+}
+
+function Facts({ title, rows }: { title: string; rows: { label: string; value: string }[] }) {
+  const wide = useWide();
   if (rows.length === 0) return null;
   return (
-    <View>
+    <View style={{ width: wide ? 400 : undefined }}>
       <Text variant="label" soft>
         {title}
       </Text>
-      {rows.map(([label, value]) => (
-        <FactRow key={label} label={spaced(label)}>
-          <Text variant="figure" size={13} align="right" style={{ flexShrink: 1 }}>
+      {rows.map(({ label, value }) => (
+        <FactRow key={label} label={label}>
+          <Text
+            variant={/\d/.test(value) && value.length < 28 ? 'figure' : 'body'}
+            size={13}
+            align="right"
+            style={{ flexShrink: 1 }}
+          >
             <UnitText>{value}</UnitText>
           </Text>
         </FactRow>
       ))}
     </View>
   );
-}
-
-/** "softMissingPercent" → "soft missing percent"; keys with blanks stay. */
-export function spaced(key: string): string {
-  return key.includes(' ')
-    ? key
-    : key
-        .replace(/([a-z0-9])([A-Z])/g, '$1 $2')
-        .replace(/[._]/g, ' ')
-        .toLowerCase();
-}
-
-function written(value: string | number | boolean | null): string {
-  if (value === null) return 'none';
-  if (typeof value === 'boolean') return value ? 'yes' : 'no';
-  if (typeof value === 'string') return value;
-  if (Number.isInteger(value)) return formatNumber(value, 0);
-  const size = Math.abs(value);
-  if (size !== 0 && (size < 1e-4 || size >= 1e7)) return value.toExponential(3).replace('-', '\u2212');
-  return formatNumber(value, size >= 100 ? 1 : size >= 1 ? 3 : 5);
 }

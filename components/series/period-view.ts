@@ -1,4 +1,4 @@
-import { fluxLabels, isQuantity, quantity } from '../../processing/catalogue';
+import { catalogue } from '../../processing/catalogue';
 import type { FluxKey } from '../../processing/state';
 import type { PeriodDetail, PeriodRow } from '../../server/contract/api';
 import type { GradeValue } from '../tokens';
@@ -23,22 +23,23 @@ export function reasonsOf(period: PeriodDetail, flux: FluxKey): PeriodReason[] {
   return period.reasons.filter((reason) => reason.fluxes.includes(flux)).sort((a, b) => rank(a) - rank(b));
 }
 
-/** "FC 12:30–13:00 graded 2: steady-state deviation 47 %" without the mark; the flux with the worst grade speaks. */
+/**
+ * The flux that speaks for a period: the worst grade, the first of equals. A flux that was rejected so thoroughly that it has no value
+ * counts as rejected; one that is missing for no found reason (no such instrument) does not speak.
+ */
 export function verdictFlux(period: Pick<PeriodRow, 'grades'>): FluxKey {
-  const worst = [...shownFluxes].sort(
-    (a, b) => (fluxGrade(period, b) ?? -1) - (fluxGrade(period, a) ?? -1),
-  )[0];
-  return worst ?? 'co2Flux';
+  const rank = (flux: FluxKey) =>
+    fluxGrade(period, flux) ?? ((period.grades[flux]?.decidedBy.length ?? 0) > 0 ? 2 : -1);
+  return shownFluxes.reduce((worst, flux) => (rank(flux) > rank(worst) ? flux : worst));
 }
 
+/** What decides a flux's grade, as the end of a sentence: "steady-state deviation 178 %". */
 export function verdictWords(period: PeriodDetail, flux: FluxKey): string {
-  const { symbol } = fluxLabels[flux];
-  if (period.outcome === 'empty') return 'nothing was recorded in this period';
-  if (period.outcome === 'crossing') return 'no result: something changed within this period';
-  const grade = fluxGrade(period, flux);
-  if (grade === null) return `${symbol} has no value`;
+  if (period.outcome === 'empty') return 'nothing was recorded';
+  if (period.outcome === 'crossing') return 'something changed within this period';
   const deciding = reasonsOf(period, flux).find((reason) => reason.grade > 0);
-  return deciding ? lowerFirst(deciding.finding) : 'every test within its limits';
+  if (deciding) return lowerFirst(deciding.finding);
+  return fluxGrade(period, flux) === null ? 'not measured' : 'every test within its limits';
 }
 
 /** Lower-cases the first letter of a sentence that begins with a plain word; symbols (CO2, H2O, Ts) stay. */
@@ -66,12 +67,12 @@ const groupTitles: [string, string][] = [
   ['screening', 'Screening'],
 ];
 
-/** All values of a period, grouped as the catalogue groups them; keys the catalogue does not know are left out. */
+/** All values of a period, grouped and ordered as the catalogue does; keys the catalogue does not know are left out. */
 export function valueGroups(values: Record<string, number | null>): ValueGroup[] {
   return groupTitles.flatMap(([group, title]) => {
-    const rows = Object.entries(values)
-      .filter(([key]) => isQuantity(key) && quantity(key).group === group)
-      .map(([key, value]) => ({ key, value }));
+    const rows = catalogue
+      .filter((entry) => entry.group === group && entry.key in values)
+      .map(({ key }) => ({ key, value: values[key] ?? null }));
     return rows.length > 0 ? [{ group, title, rows }] : [];
   });
 }

@@ -63,11 +63,15 @@ export function useWindowKeys(keys: WindowKeys): void {
 
 /** What the sheet behind `?` lists. */
 export const windowKeyWords: readonly [string, string][] = [
-  ['← →', 'previous and next period; with Shift ten'],
+  ['← →', 'previous and next period; with Shift ten at once'],
   ['[ ]', 'previous and next period'],
   ['+ −', 'closer and wider'],
   ['0', 'everything'],
   ['Enter', 'open the period under the cursor'],
-  ['drag', 'zoom into a span with the mouse; drag the spine to move'],
   ['?', 'this sheet'],
+  ['click', 'the cursor stays at this period when the pointer leaves'],
+  ['double click', 'open the period'],
+  ['drag', 'zoom into a span; drag the spine to move in time'],
+  ['one finger', 'move the cursor; up and down scrolls the page'],
+  ['two fingers', 'closer and wider'],
 ];

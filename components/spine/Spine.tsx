@@ -1,11 +1,14 @@
-import { useMemo, useRef, useState } from 'react';
+import { useId, useMemo, useRef, useState } from 'react';
 import { View } from 'react-native';
 import Svg, { Defs, G, Line, Path, Pattern, Rect, Text as SvgText } from 'react-native-svg';
+import { fluxLabels } from '../../processing/catalogue';
+import type { FluxKey } from '../../processing/state';
 import type { SpineData } from '../../server/contract/api';
 import { formatShare } from '../format/numbers';
 import { formatSpan } from '../format/times';
 import { Text } from '../primitives';
 import { face, useTheme, webStyle } from '../tokens';
+import { windowWords } from './window-words';
 import { clampWindow, instantOf, spineBars, timeTicks, xOf } from './spine-geometry';
 
 export interface TimeWindow {
@@ -27,7 +30,12 @@ export interface SpineProps {
   loading?: boolean;
   /** Small strip on a station card: no flag, no words at the side. */
   compact?: boolean;
+  /** "recorded" and "FC grades" at the left, for wide strips; takes `spineNameWidth` of the width. */
+  named?: boolean;
 }
+
+/** Room of the words at the left of a named strip [px]. */
+export const spineNameWidth = 76;
 
 const flagHeight = 16;
 
@@ -36,14 +44,40 @@ const flagHeight = 16;
  * move the window by a tenth of it, Shift by its whole length, Home and End to the ends.
  */
 export function Spine(props: SpineProps) {
+  if (!props.named) return <Strip {...props} />;
+  const height = props.height ?? 72;
+  const { middle } = stripLines(height);
+  const flux = props.data ? (fluxLabels[props.data.gradedFlux as FluxKey]?.symbol ?? '') : '';
+  return (
+    <View style={{ flexDirection: 'row', width: props.width, height }}>
+      <View aria-hidden style={{ width: spineNameWidth, height }}>
+        <Text variant="small" size={12} soft style={{ position: 'absolute', right: 10, top: middle - 19 }}>
+          recorded
+        </Text>
+        <Text variant="small" size={12} soft style={{ position: 'absolute', right: 10, top: middle + 3 }}>
+          {flux === '' ? 'grades' : `${flux} grades`}
+        </Text>
+      </View>
+      <Strip {...props} height={height} width={props.width - spineNameWidth} />
+    </View>
+  );
+}
+
+/** Where the parts of a strip lie [px from its top]. */
+function stripLines(height: number) {
+  const top = flagHeight + 2;
+  const bottom = height - 4;
+  return { top, bottom, middle: top + (bottom - top) * 0.42 };
+}
+
+function Strip(props: SpineProps) {
   const { colour } = useTheme();
   const { data, width, offsetMinutes, compact = false } = props;
   const height = props.height ?? (compact ? 52 : 72);
-  const top = flagHeight + 2;
-  const bottom = height - 4;
-  const middle = top + (bottom - top) * 0.42;
+  const { top, bottom, middle } = stripLines(height);
   const upper = middle - top;
   const lower = bottom - middle;
+  const comingId = `coming-${useId().replace(/[^a-zA-Z0-9]/g, '')}`;
   const bars = useMemo(() => (data ? spineBars(data, width) : []), [data, width]);
   const drag = useRef<{ x: number; window: TimeWindow } | null>(null);
   const [dragging, setDragging] = useState(false);
@@ -78,7 +112,7 @@ export function Spine(props: SpineProps) {
 
   const windowX = window ? xOf(window.fromMs, scale) : 0;
   const windowWidth = window ? Math.max(7, xOf(window.toMs, scale) - windowX) : 0;
-  const flag = window ? formatSpan(window.fromMs, window.toMs, offsetMinutes) : '';
+  const flag = window ? windowWords(window.fromMs, window.toMs, offsetMinutes) : '';
   const flagWidth = flag.length * 7 + 16;
   const flagX = Math.max(0, Math.min(width - flagWidth, windowX + windowWidth / 2 - flagWidth / 2));
 
@@ -156,7 +190,7 @@ export function Spine(props: SpineProps) {
       <Svg width={width} height={height} viewBox={`0 0 ${width} ${height}`} aria-hidden>
         <Defs>
           <Pattern
-            id="spine-coming"
+            id={comingId}
             width={6}
             height={6}
             patternUnits="userSpaceOnUse"
@@ -177,7 +211,13 @@ export function Spine(props: SpineProps) {
                 stroke={tick.major ? colour.hair : colour.rule}
                 strokeWidth={1}
               />
-              {x < width - tick.label.length * 7 ? (
+              {x < width - tick.label.length * 7 &&
+              !(
+                flag !== '' &&
+                !compact &&
+                x + 6 + tick.label.length * 7.2 > flagX &&
+                x < flagX + flagWidth + 2
+              ) ? (
                 <SvgText
                   x={x + 4}
                   y={12}
@@ -244,7 +284,7 @@ export function Spine(props: SpineProps) {
             y={top}
             width={Math.max(3, xOf(props.comingIn.toMs, scale) - xOf(props.comingIn.fromMs, scale))}
             height={bottom - top}
-            fill="url(#spine-coming)"
+            fill={`url(#${comingId})`}
             stroke={colour.rule}
             strokeDasharray="3 2"
           />
@@ -293,6 +333,6 @@ function mean(values: readonly number[]): number {
 export function describeSpine(data: SpineData, offsetMinutes: number): string {
   return (
     `${formatSpan(data.fromMs, data.toMs, offsetMinutes)}: ${formatShare(mean(data.recorded))} recorded; ` +
-    `${data.gradedFlux} good ${formatShare(mean(data.good))}, usable ${formatShare(mean(data.usable))}, rejected ${formatShare(mean(data.rejected))}`
+    `${fluxLabels[data.gradedFlux as FluxKey]?.symbol ?? data.gradedFlux} good ${formatShare(mean(data.good))}, usable ${formatShare(mean(data.usable))}, rejected ${formatShare(mean(data.rejected))}`
   );
 }

@@ -27,10 +27,13 @@ export interface SpineBar {
 /** One bar per bin; bins without anything are left out. */
 export function spineBars(data: SpineData, width: number): SpineBar[] {
   const scale = { fromMs: data.fromMs, toMs: data.toMs, width };
+  const isWide = (data.binMs / (data.toMs - data.fromMs)) * width >= 2;
   return data.recorded.flatMap((recorded, index) => {
     const start = data.fromMs + index * data.binMs;
-    const x = xOf(start, scale);
-    const right = xOf(Math.min(data.toMs, start + data.binMs), scale);
+    // whole pixels where bins are wide enough, so that no seams show between them
+    const snap = (px: number) => (isWide ? Math.round(px) : px);
+    const x = snap(xOf(start, scale));
+    const right = snap(xOf(Math.min(data.toMs, start + data.binMs), scale));
     const good = data.good[index] ?? 0;
     const usable = data.usable[index] ?? 0;
     const rejected = data.rejected[index] ?? 0;
@@ -124,4 +127,25 @@ export function clampWindow(
   const length = Math.min(window.toMs - window.fromMs, bounds.toMs - bounds.fromMs);
   const fromMs = Math.min(Math.max(window.fromMs, bounds.fromMs), bounds.toMs - length);
   return { fromMs, toMs: fromMs + length };
+}
+
+/** Where the panels' vertical lines stand: midnights under hours, else every labelled day or month. */
+export function gridInstants(scale: StripScale, offsetMinutes: number, minGapPx = 58): number[] {
+  const ticks = timeTicks(scale, offsetMinutes, minGapPx);
+  const isHourly = ticks.some((tick) => tick.label.includes(':'));
+  return ticks.filter((tick) => !isHourly || tick.major).map((tick) => tick.atMs);
+}
+
+/** A window changed by a factor about an instant that keeps its place; never shorter than `leastMs`, never outside of the bounds. */
+export function zoomedWindow(
+  window: { fromMs: number; toMs: number },
+  factor: number,
+  aboutMs: number,
+  bounds: { fromMs: number; toMs: number },
+  leastMs: number,
+): { fromMs: number; toMs: number } {
+  const before = window.toMs - window.fromMs;
+  const length = Math.min(bounds.toMs - bounds.fromMs, Math.max(leastMs, before * factor));
+  const share = Math.min(1, Math.max(0, (aboutMs - window.fromMs) / before));
+  return clampWindow({ fromMs: aboutMs - share * length, toMs: aboutMs + (1 - share) * length }, bounds);
 }
