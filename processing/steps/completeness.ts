@@ -176,9 +176,11 @@ export const completenessStep: Step<RecipeSettings['completeness']> = (state, se
       limits: { softHigh: settings.softMissingPercent, hardHigh: settings.hardMissingPercent },
       finding: recorded === 0 ? 'No scans recorded' : `Scans missing ${formatPercent(missing)}`,
       sentence:
-        grade === 2
-          ? `${howMuch}${where}. With more than ${formatNumber(settings.hardMissingPercent)} % missing the period is not processed: it would be another, shorter measurement.`
-          : `${howMuch}${where}. A long hole means that a shorter, different period was measured.`,
+        recorded === 0
+          ? `None of ${countOf(expected, 'expected scan')} was recorded, so there is nothing to compute. Look for a raw file that was not brought in, or for a stop of the logger.`
+          : grade === 2
+            ? `${howMuch}${where}. With more than ${formatNumber(settings.hardMissingPercent)} % missing the period is not processed: it would be another, shorter measurement.`
+            : `${howMuch}${where}. A long hole means that a shorter, different period was measured.`,
       ...(longestGapAt >= 0 ? { atS: longestGapAt / rate } : {}),
     });
   }

@@ -500,7 +500,6 @@ function noteMissing(state: PeriodState, inputs: FluxInputs, fluxes: FluxState):
       series: 'h2o',
       grade: 2,
       statistic: { label: 'pairs of w and H2O', value: state.moments?.pairs.h2o ?? 0, unit: '1' },
-      limits: { hardLow: 1 },
       finding: 'No H2O, so no LE and FC',
       sentence:
         'H2O is missing. Without it there is no latent heat flux, and the CO2 flux lacks its density terms, which can be larger than the flux itself.',
@@ -513,7 +512,6 @@ function noteMissing(state: PeriodState, inputs: FluxInputs, fluxes: FluxState):
       series: 'co2',
       grade: 2,
       statistic: { label: 'pairs of w and CO2', value: state.moments?.pairs.co2 ?? 0, unit: '1' },
-      limits: { hardLow: 1 },
       finding: 'No CO2, so no FC',
       sentence: 'CO2 is missing in this period, so it has no CO2 flux.',
     });

@@ -93,20 +93,44 @@ function worse(a: Grade, b: Grade): Grade {
 }
 
 /**
- * The worst grade among findings, and which findings have it.
+ * How many times its limit a finding's statistic is, so that findings of different tests can be put in order.
+ *
+ * Against a lower limit it is the limit over the value. A finding without statistic or limits gives 0.
+ *
+ * @returns ≥ 0; Infinity for a value of 0 below a lower limit
+ * @reference project choice
+ */
+export function overshoot(reason: Partial<Pick<Reason, 'statistic' | 'limits'>>): number {
+  const value = reason.statistic?.value ?? null;
+  if (value === null || !reason.limits) return 0;
+  const { softLow, softHigh, hardLow, hardHigh } = reason.limits;
+  const high = hardHigh ?? softHigh;
+  const low = hardLow ?? softLow;
+  const above = high !== null && high > 0 && value > high ? value / high : 0;
+  const below = low !== null && low > 0 && value < low ? (value > 0 ? low / value : Infinity) : 0;
+  return Math.max(above, below);
+}
+
+/**
+ * The worst grade among findings, and which findings have it: the one farthest beyond its limit first, equals in the order of the chain.
  *
  * @param reasons findings that bear on one flux
  * @returns grade 0 and no key when nothing was found against it
  */
-export function worstOf(reasons: readonly Pick<Reason, 'key' | 'grade'>[]): {
+export function worstOf(
+  reasons: readonly (Pick<Reason, 'key' | 'grade'> & Partial<Pick<Reason, 'statistic' | 'limits'>>)[],
+): {
   grade: Grade;
   decidedBy: string[];
 } {
   const grade = reasons.reduce<Grade>((worst, reason) => worse(worst, reason.grade), 0);
+  const deciding = grade === 0 ? [] : reasons.filter((reason) => reason.grade === grade);
   return {
     grade,
-    decidedBy:
-      grade === 0 ? [] : reasons.filter((reason) => reason.grade === grade).map((reason) => reason.key),
+    decidedBy: deciding
+      .map((reason) => ({ key: reason.key, beyond: overshoot(reason) }))
+      .sort((a, b) => (a.beyond === b.beyond ? 0 : b.beyond - a.beyond))
+      .map(({ key }) => key),
   };
 }
 

@@ -306,15 +306,32 @@ function addFallbackReason(
     pairs: `Fewer than ${formatNumber(minimumPairsPercent)} % of the samples of w and ${name} pair up. ${used}`,
     'no-data': `No sample of w and ${name} pairs up, so there is no lag to find.`,
   };
+  const findings: Record<LagFallback, string> = {
+    edge: `${name} lag at edge of search`,
+    noise: `${name} lag lost in noise`,
+    pairs: `Few pairs of w and ${name}`,
+    'no-data': `No pairs of w and ${name}`,
+  };
   addReason(state, {
     key: `lag.${gas}`,
     step: 'lag',
     fluxes: fluxesOf(gas),
     series: gas,
     grade: 0,
-    statistic: { label: 'largest covariance over noise level', value: overNoise, unit: '1' },
-    limits: { softLow: noiseFactor },
-    finding: choice.fallback === 'no-data' ? `No pairs with ${name}` : `${name} lag: expected one used`,
+    // a peak at the edge of the window stands out of the noise: what failed there is not the noise test
+    ...(choice.fallback === 'noise'
+      ? {
+          statistic: { label: 'largest covariance over noise level', value: overNoise, unit: '1' },
+          limits: { softLow: noiseFactor },
+        }
+      : {
+          statistic: {
+            label: 'lag of the largest covariance',
+            value: choice.fallback === 'edge' ? choice.peakSamples / sampleRateHz : null,
+            unit: 's',
+          },
+        }),
+    finding: findings[choice.fallback ?? 'no-data'],
     sentence: choice.fallback ? stories[choice.fallback] : '',
   });
 }

@@ -143,7 +143,8 @@ export function gradeAbove(
 }
 
 /**
- * A number as it stands in a sentence: fixed decimals, true minus sign, thousands grouped by a comma; the same in every locale.
+ * A number as it stands in a sentence: fixed decimals, true minus sign, from five digits on in groups of three parted by a
+ * narrow no-break space, as on screen; the same in every locale.
  *
  * @param value not a number gives "no value"
  * @param decimals digits after the point
@@ -152,7 +153,7 @@ export function formatNumber(value: number | null, decimals = 0): string {
   if (value === null || !Number.isFinite(value)) return 'no value';
   const fixed = Math.abs(value).toFixed(decimals);
   const [whole, fraction] = fixed.split('.');
-  const grouped = whole.replace(/\B(?=(\d{3})+(?!\d))/g, ',');
+  const grouped = whole.length > 4 ? whole.replace(/\B(?=(\d{3})+(?!\d))/g, '\u202f') : whole;
   const text = fraction === undefined ? grouped : `${grouped}.${fraction}`;
   const isZero = !/[1-9]/.test(fixed);
   return value < 0 && !isZero ? `\u2212${text}` : text;

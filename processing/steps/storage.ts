@@ -297,7 +297,6 @@ function noteMissing(state: PeriodState, noStart: boolean, noEnd: boolean, edgeM
     series: 'co2',
     grade: 0,
     statistic: { label: 'boundaries known', value: 2 - Number(noStart) - Number(noEnd), unit: '1' },
-    limits: { softLow: 2 },
     finding: 'Net exchange without storage',
     sentence: `${where}, so what piled up below the sensor is unknown. Net exchange is the turbulent flux alone.`,
   });

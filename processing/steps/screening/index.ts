@@ -264,12 +264,10 @@ function noteAmplitude(
     key,
     { label: `empty histogram bins, ${label}`, value: empty, unit: '%' },
     upperLimits(settings.amplitudeResolution.emptyPercent),
+    isFrozen ? `${name} frozen at one value` : `${name} too coarse: ${formatNumber(empty)} % gaps`,
     isFrozen
-      ? `${name} frozen, ${formatNumber(empty)} % empty`
-      : `${name} too coarse, ${formatNumber(empty)} %`,
-    isFrozen
-      ? `In the ${formatDuration(windowS)} ${formatPlace(emptyAtS)} all samples of ${label} are the same. Moving air does not stand still: the signal froze.`
-      : `In the ${formatDuration(windowS)} ${formatPlace(emptyAtS)}, ${formatNumber(empty)} % of the histogram bins of ${label} are empty: the signal moves in steps, like a comb, and small fluctuations are lost.`,
+      ? `${windowWords(windowS, emptyAtS)} all samples of ${label} are the same. Moving air does not stand still: the signal froze.`
+      : `${windowWords(windowS, emptyAtS)}, ${formatNumber(empty)} % of the histogram bins of ${label} are empty: the signal moves in steps, like a comb, and small fluctuations are lost.`,
     { atS: emptyAtS },
   );
 
@@ -287,10 +285,22 @@ function noteAmplitude(
     key,
     { label: `longest run in one bin, ${label}`, value: worst, unit: '%' },
     upperLimits(limits),
-    `${name} stuck for ${formatNumber(worst, 1)} %`,
-    `In the ${formatDuration(windowS)} ${formatPlace(atS)}, ${label} stays at one value${isExtreme ? ' far from its usual ones' : ''} for ${formatNumber(worst, 1)} % of the samples in a row. Moving air does not stand still: the signal froze or dropped out.`,
+    `${name} stuck for ${percentText(worst)}`,
+    `${windowWords(windowS, atS)}, ${label} stays at one value${isExtreme ? ' far from its usual ones' : ''} for ${percentText(worst)} of the samples in a row. Moving air does not stand still: the signal froze or dropped out.`,
     { atS },
   );
+}
+
+/** "In the first 50 s", "In the 50 s from 10 min 25 s on". */
+function windowWords(windowS: number, atS: number): string {
+  return atS === 0
+    ? `In the first ${formatDuration(windowS)}`
+    : `In the ${formatDuration(windowS)} ${formatPlace(atS)}`;
+}
+
+/** "11.1 %", but "100 %". */
+function percentText(percent: number): string {
+  return `${formatNumber(percent, Number.isInteger(Math.round(percent * 10) / 10) ? 0 : 1)} %`;
 }
 
 function noteSteps(
@@ -317,8 +327,8 @@ function noteSteps(
     key,
     { label: `step in the mean, ${label}`, value: found.meanStep, unit: '1' },
     upperLimits(settings.discontinuities.mean),
-    `${name} steps by ${formatNumber(found.meanStep, 1)}`,
-    `The ${minutes} means of ${label} before and after ${formatDuration(meanAtS)} differ by ${formatNumber(found.meanStep, 1)} times its spread. A step widens that spread itself, so even a large one gives only a moderate number.`,
+    `${name} steps by ${formatNumber(found.meanStep, 2)} spreads`,
+    `The ${minutes} means of ${label} before and after ${formatDuration(meanAtS)} differ by ${formatNumber(found.meanStep, 2)} times its spread. A step widens that spread itself, so even a large one gives only a moderate number.`,
     { atS: meanAtS },
   );
 

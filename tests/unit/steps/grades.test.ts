@@ -58,6 +58,26 @@ describe('worstOf', () => {
       }),
     );
   });
+
+  it('puts the finding farthest beyond its limit first, an equal one in the order of the chain', () => {
+    const noLimits = { softLow: null, softHigh: null, hardLow: null, hardHigh: null };
+    const finding = (key: string, value: number | null, limits: Partial<Reason['limits']>) => ({
+      key,
+      grade: 2 as const,
+      statistic: { label: key, value, unit: '%' },
+      limits: { ...noLimits, ...limits },
+    });
+    // 37/30 = 1.23, 178/100 = 1.78, at least 90 but 30: 3; without limits: last
+    expect(
+      worstOf([
+        finding('noLimit', 5, {}),
+        finding('lag', 37, { softHigh: 15, hardHigh: 30 }),
+        finding('steady', 178, { softHigh: 30, hardHigh: 100 }),
+        finding('rows', 30, { hardLow: 90 }),
+        finding('untested', null, { hardHigh: 1 }),
+      ]).decidedBy,
+    ).toEqual(['rows', 'steady', 'lag', 'noLimit', 'untested']);
+  });
 });
 
 describe('gradePeriod', () => {
