@@ -25,7 +25,7 @@ export function applyGroupEvent(client: QueryClient, group: string, event: Group
         mergeRawFile(files, rawFile),
       );
       client.setQueryData<ReadingShares>(rawFileKeys.progress(group), (shares = {}) => {
-        const { [rawFile.id]: _, ...others } = shares;
+        const others = Object.fromEntries(Object.entries(shares).filter(([id]) => id !== rawFile.id));
         return rawFile.state === 'reading' && share !== null ? { ...others, [rawFile.id]: share } : others;
       });
       if (before?.state !== rawFile.state && rawFile.state !== 'reading') {

@@ -29,7 +29,7 @@ export function HashText({ hash, of = 'hash', length = 8, full = false }: HashTe
     <View style={{ flexDirection: 'row', alignItems: 'center', gap: 6, flexShrink: 1 }}>
       <Pressable
         role="button"
-        aria-label={`Copy the whole hash of this ${of}, ${hash.slice(0, length)}`}
+        aria-label={`Copy the whole hash of this ${of}, ${full ? hash : hash.slice(0, length)}`}
         onPress={copy}
         {...({ title: hash } as object)}
         style={[

@@ -164,7 +164,7 @@ function QuantityLine(
   const name =
     column === null ? null : (preview.names?.[column.index] ?? column.name ?? `column ${column.index + 1}`);
   const range =
-    summary && summary.count > 0
+    summary && summary.count > 0 && !row.how.includes('range ')
       ? `${formatNumber(summary.min, 2)} to ${formatNumber(summary.max, 2)} in the first rows`
       : null;
   return (
@@ -316,7 +316,7 @@ function GoodCodes({ good, onChange }: { good: Good; onChange: (good: Good) => v
           help="Any other code makes the sample missing."
         />
       </View>
-      <View style={{ width: wide ? 150 : '100%' }}>
+      <View style={{ width: wide ? 190 : '100%' }}>
         <NumberInput
           label="Or: bits looked at"
           optional
@@ -325,7 +325,7 @@ function GoodCodes({ good, onChange }: { good: Good; onChange: (good: Good) => v
         />
       </View>
       {good.mask !== null ? (
-        <View style={{ width: wide ? 150 : '100%' }}>
+        <View style={{ width: wide ? 190 : '100%' }}>
           <NumberInput
             label="must give"
             value={good.equals}

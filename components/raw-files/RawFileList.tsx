@@ -59,6 +59,12 @@ export function fileState(file: RawFile, share: number | undefined): FileState {
   return { mark: 0, words: 'read' };
 }
 
+/** Both ends, the day once where it is the same. */
+function scanSpan(clock: StationClock, fromMs: number, toMs: number): string {
+  const end = clock.date(fromMs) === clock.date(toMs) ? clock.clock(toMs, true) : clock.moment(toMs, true);
+  return `${clock.moment(fromMs, true)} to ${end}`;
+}
+
 type Shown = 'all' | 'look' | 'unused';
 
 /** All raw files of a station with what is known of each. */
@@ -84,7 +90,7 @@ export function RawFileList(props: RawFileListProps) {
   const spanWords = (file: RawFile): string =>
     file.firstScanMs === null || file.lastScanMs === null
       ? ''
-      : `${clock.moment(file.firstScanMs, true)} to ${clock.moment(file.lastScanMs, true)}`;
+      : scanSpan(clock, file.firstScanMs, file.lastScanMs);
   const open = (file: RawFile) => (
     <Button
       kind="quiet"
@@ -324,7 +330,7 @@ function FileSheet(props: RawFileListProps & { file: RawFile; onClose: () => voi
             formatBytes(file.bytes),
             file.firstScanMs === null || file.lastScanMs === null
               ? ''
-              : `${clock.moment(file.firstScanMs, true)} to ${clock.moment(file.lastScanMs, true)} (${clock.zone})`,
+              : `${scanSpan(clock, file.firstScanMs, file.lastScanMs)} (${clock.zone})`,
           ]
             .filter(Boolean)
             .join(' · ')}

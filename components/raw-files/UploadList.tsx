@@ -126,7 +126,7 @@ export function UploadList({ queue, items, readingShares }: UploadListProps) {
                   <Button
                     kind="quiet"
                     label="Send again"
-                    ariaLabel={`Send ${item.file.name} again`}
+                    ariaLabel={`Send again: ${item.file.name}`}
                     onPress={() => queue.retry(item.id)}
                   />
                 ) : null}

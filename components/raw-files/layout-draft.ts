@@ -1,8 +1,10 @@
 import type { ChannelKey, Layout, LayoutColumn } from '../../processing/schemas/layout';
 import { channelUnits, layoutSchema, statusChannels } from '../../processing/schemas/layout';
 import { contentHash } from '../../processing/canonical';
+import { channelWords, isOrdinaryForUnit } from '../../processing/records/guess-layout';
 import type { GuessedField, LayoutGuess, LayoutProblem } from '../../processing/records/guess-layout';
 import type { Preview } from '../../processing/records/preview';
+import { formatNumber } from '../format/numbers';
 
 /** A layout while a person looks at it: what they changed, and what is still open. */
 
@@ -130,6 +132,21 @@ export function openProblems(draft: LayoutDraft, preview: Preview): LayoutProble
         column.channel,
         `Column ${column.index + 1} holds words, not numbers, in ${column.unreadable} of the first ${preview.rows.length} rows.`,
       );
+    }
+  }
+  // also for units that a person or a saved layout gave: the numbers may have changed since
+  for (const column of preview.columns) {
+    const unit = layout.columns.find((candidate) => candidate.channel === column.channel)?.unit ?? '';
+    const isKnownDoubt = doubts.some((problem) => problem.channel === column.channel);
+    if (!isKnownDoubt && !isOrdinaryForUnit(column.channel, unit, column.median)) {
+      const words = channelWords[column.channel];
+      found.push({
+        code: 'unit-contradicts-range',
+        severity: 'confirm',
+        field: 'columns',
+        channel: column.channel,
+        message: `${words.charAt(0).toUpperCase()}${words.slice(1)}: values around ${formatNumber(column.median, column.median < 100 ? 2 : 0)} are not ordinary for ${unit}. Please look.`,
+      });
     }
   }
   const parsed = layoutSchema.safeParse(layout);

@@ -42,7 +42,7 @@ export function MethodsParagraph({ settings, former, onChange }: MethodsParagrap
             </Text>
           </View>
           <View style={{ flex: wide ? 1 : undefined, minWidth: 0, maxWidth: 680 }}>
-            <Text style={webStyle({ lineHeight: onChange ? (wide ? 2.3 : 3) : 1.75, fontSize: 16 })}>
+            <Text style={{ lineHeight: onChange ? (wide ? 38 : 52) : 28, fontSize: 16 }}>
               {paragraph.parts.map((part, index) =>
                 typeof part === 'string' ? (
                   part

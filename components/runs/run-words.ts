@@ -17,9 +17,9 @@ export function runState(run: Run): RunState {
     case 'waiting':
       return { mark: null, words: 'waits for its turn' };
     case 'reading':
-      return { mark: null, words: 'reads raw files' };
+      return { mark: null, words: 'reading raw files' };
     case 'computing':
-      return { mark: null, words: 'computes' };
+      return { mark: null, words: 'being computed' };
     case 'failed':
       return { mark: 2, words: 'failed' };
     case 'cancelled':

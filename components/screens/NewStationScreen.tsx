@@ -26,7 +26,7 @@ import {
 import { SafetyNotice } from '../set-up/SafetyNotice';
 import { SetUpForm } from '../set-up/SetUpForm';
 import { emptySetUp, slugOf } from '../set-up/set-up-fields';
-import { newStationFormSchema } from '../set-up/station-form';
+import { newStationFormSchema, formWords } from '../set-up/station-form';
 import type { StationFormInput, StationFormOutput } from '../set-up/station-form';
 import { AppShell, groupPath, stationPath } from '../shell';
 import { space, useWide } from '../tokens';
@@ -41,7 +41,7 @@ export function NewStationScreen({ group }: { group: string }) {
   const [ids] = useState(() => ({ id: newId(), systemId: newId(), setUpId: newId() }));
   const [ownSlug, setOwnSlug] = useState(false);
   const form = useForm<StationFormInput, unknown, StationFormOutput>({
-    resolver: zodResolver(newStationFormSchema),
+    resolver: zodResolver(newStationFormSchema, formWords),
     mode: 'onTouched',
     defaultValues: {
       station: {
@@ -87,7 +87,7 @@ export function NewStationScreen({ group }: { group: string }) {
         {mayCreate ? (
           <View style={{ gap: space.xl }}>
             <SafetyNotice />
-            <Section title="Name" level={3}>
+            <Section title="Name">
               <View
                 style={{
                   flexDirection: wide ? 'row' : 'column',

@@ -144,13 +144,28 @@ export function RecipesScreen({ group, hash: wantedHash }: { group: string; hash
             Leads and analysts can make recipes.
           </Text>
         )}
-        {isEditing ? null : (
-          <Suspense fallback={<LoadingLine label="reading the sources" />}>
-            <SourcesTable settings={settings} />
-          </Suspense>
-        )}
+        {isEditing ? null : <Sources settings={settings} />}
       </PageBody>
     </AppShell>
+  );
+}
+
+/** A long table, asked for by those who check it. */
+function Sources({ settings }: { settings: RecipeSettings }) {
+  const [isOpen, setIsOpen] = useState(false);
+  return (
+    <View style={{ gap: space.l }}>
+      <Button
+        label={isOpen ? 'Hide the sources' : 'Where the numbers come from'}
+        ariaExpanded={isOpen}
+        onPress={() => setIsOpen(!isOpen)}
+      />
+      {isOpen ? (
+        <Suspense fallback={<LoadingLine label="reading the sources" />}>
+          <SourcesTable settings={settings} />
+        </Suspense>
+      ) : null}
+    </View>
   );
 }
 

@@ -256,7 +256,7 @@ function RunItem({
         {run.periodsDone > 0 ? (
           <Button
             label="Open series"
-            ariaLabel={`Open the series of run ${run.number}`}
+            ariaLabel={`Open series of run ${run.number}`}
             href={`${stationPath(group, slug, 'series')}?run=${run.id}`}
           />
         ) : null}
@@ -264,7 +264,7 @@ function RunItem({
           <Button
             kind={isStale ? 'primary' : 'secondary'}
             label={run.state === 'done' ? 'Recompute' : 'Compute again'}
-            ariaLabel={`Compute run ${run.number} again`}
+            ariaLabel={`${run.state === 'done' ? 'Recompute' : 'Compute again'}: run ${run.number}`}
             busy={start.isPending}
             onPress={recompute}
           />

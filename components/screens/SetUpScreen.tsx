@@ -34,7 +34,7 @@ import { CompassDrawing } from '../set-up/CompassDrawing';
 import { SafetyNotice } from '../set-up/SafetyNotice';
 import { SetUpForm } from '../set-up/SetUpForm';
 import { emptySetUp, fieldWords, setUpDifferences, setUpGroups } from '../set-up/set-up-fields';
-import { correctionFormSchema } from '../set-up/station-form';
+import { correctionFormSchema, formWords } from '../set-up/station-form';
 import type { StationFormInput, StationFormOutput } from '../set-up/station-form';
 import { groupPath, stationPath } from '../shell';
 import { space, useTheme, useWide } from '../tokens';
@@ -162,7 +162,7 @@ function SetUpPage({ group, summary, mode, setMode, mayAdd }: SetUpPageProps) {
         {mayDelete ? (
           <Section
             title="Delete the station"
-            level={3}
+
             subtitle="Shows first what would go and what would stay."
           >
             <Button label="Delete this station" onPress={() => setAsksDelete(true)} />
@@ -194,11 +194,17 @@ function Facts({ revision }: { revision: SetUpRevision }) {
       >
         {setUpGroups.map((group) => (
           <View key={group.key} style={{ width: wide ? 330 : '100%' }}>
-            <Text variant="part">{group.title}</Text>
+            <Text variant="part" level={2}>
+              {group.title}
+            </Text>
             {group.fields.map((field) => (
               <FactRow key={field.path} label={field.label}>
                 <Text variant={field.kind === 'choice' ? 'body' : 'figure'} align="right">
-                  <UnitText>{fieldWords(setUp, field)}</UnitText>
+                  {field.kind === 'number' ? (
+                    <UnitText>{fieldWords(setUp, field)}</UnitText>
+                  ) : (
+                    fieldWords(setUp, field)
+                  )}
                 </Text>
               </FactRow>
             ))}
@@ -206,7 +212,9 @@ function Facts({ revision }: { revision: SetUpRevision }) {
         ))}
         {setUp.disturbedSectors.length > 0 ? (
           <View style={{ width: wide ? 330 : '100%' }}>
-            <Text variant="part">Disturbed directions</Text>
+            <Text variant="part" level={2}>
+              Disturbed directions
+            </Text>
             {setUp.disturbedSectors.map((sector) => (
               <FactRow
                 key={`${sector.fromDeg}-${sector.toDeg}`}
@@ -300,7 +308,7 @@ function Correction({ group, summary, newest, onClose, onSaved }: CorrectionProp
   const add = useAddSetUp(group, station.slug);
   const [id] = useState(newId);
   const form = useForm<StationFormInput, unknown, StationFormOutput>({
-    resolver: zodResolver(correctionFormSchema),
+    resolver: zodResolver(correctionFormSchema, formWords),
     mode: 'onTouched',
     defaultValues: {
       station,
@@ -329,7 +337,7 @@ function Correction({ group, summary, newest, onClose, onSaved }: CorrectionProp
       <PageBody maxWidth={1180}>
         <SafetyNotice />
         <SetUpForm control={control} setValue={setValue} />
-        <Section title="What changes, and why" level={3}>
+        <Section title="What changes, and why">
           {newest ? (
             isUnchanged ? (
               <Text soft>Nothing differs yet.</Text>

@@ -36,7 +36,7 @@ export function SetUpForm({ control, setValue }: SetUpFormProps) {
   const offset = useWatch({ control, name: 'station.utcOffsetMinutes' });
   return (
     <View style={{ gap: space.xl }}>
-      <Section title="From when" level={3}>
+      <Section title="From when">
         <Grid>
           <Cell>
             <Controller
@@ -58,7 +58,7 @@ export function SetUpForm({ control, setValue }: SetUpFormProps) {
         </Grid>
       </Section>
       {setUpGroups.map((group) => (
-        <Section key={group.key} title={group.title} subtitle={group.intro} level={3}>
+        <Section key={group.key} title={group.title} subtitle={group.intro}>
           <View style={{ flexDirection: wide ? 'row' : 'column', gap: space.xl, alignItems: 'flex-start' }}>
             <View style={{ flex: wide ? 1 : undefined, alignSelf: 'stretch', minWidth: 0 }}>
               <Grid>

@@ -422,7 +422,13 @@ const problem = (
   message: string,
   severity: LayoutProblem['severity'] = 'confirm',
   channel: ChannelKey | null = null,
-): LayoutProblem => ({ code, severity, field, channel, message });
+): LayoutProblem => ({
+  code,
+  severity,
+  field,
+  channel,
+  message: message.charAt(0).toUpperCase() + message.slice(1),
+});
 
 /** Which of day and month comes first in tokens like 22/06/2027. */
 function dayMonthOrder(
@@ -930,6 +936,18 @@ const unitFits: Partial<Record<ChannelKey, readonly UnitFit[]>> = {
     { unit: '%', low: 1.1001, high: 130 },
   ],
 };
+
+/**
+ * Whether a median is ordinary for a unit.
+ *
+ * @returns true where nothing is known of the unit's range
+ */
+export function isOrdinaryForUnit(channel: ChannelKey, unit: string, median: number): boolean {
+  const fit = unitFits[channel]?.find(
+    (candidate) => unit === candidate.unit || unit === `${candidate.unit} dry`,
+  );
+  return fit === undefined || Number.isNaN(median) || (median >= fit.low && median <= fit.high);
+}
 
 const short = (value: number): string => {
   const size = Math.abs(value);
