@@ -53,6 +53,11 @@ async function hashOfSources() {
   return hash.digest('hex');
 }
 
+/** Whether dist/server was built from the sources as they are now. */
+export async function isServerBuilt() {
+  return existsSync(stampFile) && (await readFile(stampFile, 'utf8')).trim() === (await hashOfSources());
+}
+
 /** @returns whether anything had to be built */
 export async function buildServer({ force = false } = {}) {
   const wanted = await hashOfSources();

@@ -338,4 +338,6 @@ async function main(): Promise<number> {
   }
 }
 
-process.exitCode = await main();
+void main().then((code) => {
+  process.exitCode = code;
+});

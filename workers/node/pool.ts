@@ -51,20 +51,19 @@ export interface WorkerPool {
   close(): Promise<void>;
 }
 
-/** The bundled worker lies beside the bundle that this code is in; from source it is a TypeScript file. */
-function workerEntry(): { filename: string; execArgv: string[] } {
+/** The bundled worker lies beside the bundle that this code is in; sources are translated as they are loaded. */
+function workerEntry(): string {
   const isSource = import.meta.url.endsWith('.ts');
-  return {
-    filename: fileURLToPath(new URL(isSource ? './worker.ts' : './worker.mjs', import.meta.url)),
-    execArgv: isSource ? ['--import', import.meta.resolve('tsx')] : [],
-  };
+  return fileURLToPath(new URL(isSource ? './worker-source.mjs' : './worker.mjs', import.meta.url));
 }
 
 /** Threads stay alive between tasks: each repeats the warm-up of the compiler. */
 export function createPool(threads: number, options: PoolOptions = {}): WorkerPool {
   const { maxOldGenerationSizeMb = 256 } = options;
   const piscina = new Piscina({
-    ...(options.workerFile === undefined ? workerEntry() : { filename: options.workerFile }),
+    filename: options.workerFile ?? workerEntry(),
+    // Not those of this process: the worker brings what it needs.
+    execArgv: [],
     minThreads: threads,
     maxThreads: threads,
     idleTimeout: Infinity,
