@@ -50,7 +50,7 @@ export default [
     },
   },
   {
-    files: ['**/*.{ts,tsx,mts}'],
+    files: ['**/*.{ts,tsx}'],
     rules: {
       '@typescript-eslint/consistent-type-imports': ['error', { prefer: 'type-imports' }],
       '@typescript-eslint/no-explicit-any': 'error',
