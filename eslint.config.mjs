@@ -42,9 +42,17 @@ export default [
   },
   ...expo,
   {
+    settings: { 'import/ignore': ['node_modules'] },
     rules: {
       'import/no-cycle': ['error', { maxDepth: 12, ignoreExternal: true }],
+      // The compiler checks names; these rules would parse every package again.
       'import/no-unresolved': 'off',
+      'import/namespace': 'off',
+      'import/named': 'off',
+      'import/default': 'off',
+      'import/export': 'off',
+      'import/no-named-as-default': 'off',
+      'import/no-named-as-default-member': 'off',
       'no-console': 'error',
       eqeqeq: ['error', 'always', { null: 'ignore' }],
     },
@@ -54,7 +62,7 @@ export default [
     rules: {
       '@typescript-eslint/consistent-type-imports': ['error', { prefer: 'type-imports' }],
       '@typescript-eslint/no-explicit-any': 'error',
-      '@typescript-eslint/no-unused-vars': ['error', { argsIgnorePattern: '^_' }],
+      '@typescript-eslint/no-unused-vars': ['error', { argsIgnorePattern: '^_', varsIgnorePattern: '^_' }],
     },
   },
   layer(
