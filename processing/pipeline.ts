@@ -1,5 +1,6 @@
 import type { RecipeSettings } from './schemas/recipe';
 import type { SetUp } from './schemas/set-up';
+import { residentSeries } from './numerics/series-kernel';
 import type {
   Block,
   FluxGrade,
@@ -79,10 +80,12 @@ function startState(
   context: PeriodContext,
 ): PeriodState {
   const series: Partial<Record<SeriesKey, Float64Array>> = {};
-  for (const key of seriesKeys) {
-    const values = block.values[key];
-    if (values) series[key] = values;
-  }
+  const recorded = seriesKeys.filter((key) => block.values[key] !== undefined);
+  residentSeries(block.length, recorded.length).forEach((values, index) => {
+    const key = recorded[index];
+    values.set(block.values[key] as Float64Array);
+    series[key] = values;
+  });
   return {
     block,
     setUp,

@@ -1,16 +1,10 @@
+import type { LaggedSeries } from './lagged-products';
 import { laggedProducts } from './lagged-products';
+import { countValid, deviationSum, mean, pairMoments } from './moments';
 
 /**
  * Covariances of two series at many lags, exact over the samples that are valid at each lag.
  */
-
-const keptWork: Float64Array[] = [];
-
-/** Work array of exactly n values that is used again by the next call; what was in it is not cleared. */
-function workArray(slot: number, n: number): Float64Array {
-  if (keptWork[slot]?.length !== n) keptWork[slot] = new Float64Array(n);
-  return keptWork[slot];
-}
 
 export interface LaggedCovariances {
   maxLag: number;
@@ -20,42 +14,26 @@ export interface LaggedCovariances {
   pairs: Float64Array;
 }
 
-/** Series with its mean taken off and gaps as zeros, as the sums need it. */
-interface Centred {
-  /** x − mean; a work array, good until the next call that uses its slot. */
-  values: Float64Array;
-  /** Sum of the values: zero but for rounding. */
+/** A series, its mean, and where it has gaps. */
+interface Centred extends LaggedSeries {
+  /** Sum of the values less their mean: zero but for rounding. */
   total: number;
   /** Positions of missing samples. */
   missing: Int32Array;
 }
 
-function centre(series: Float64Array, slot: number): Centred {
-  const n = series.length;
-  let sum = 0;
-  let count = 0;
-  for (let i = 0; i < n; i++) {
-    const value = series[i];
-    if (value === value) {
-      sum += value;
-      count++;
-    }
-  }
-  const mean = count > 0 ? sum / count : 0;
-  const values = workArray(slot, n);
-  const missing = new Int32Array(n - count);
-  let total = 0;
-  for (let i = 0, m = 0; i < n; i++) {
-    const deviation = series[i] - mean;
-    if (deviation === deviation) {
-      values[i] = deviation;
-      total += deviation;
-    } else {
-      values[i] = 0;
-      missing[m++] = i;
-    }
-  }
-  return { values, total, missing };
+function centre(values: Float64Array): Centred {
+  const taken = mean(values);
+  const { n, sum } = deviationSum(values, taken);
+  const missing = new Int32Array(values.length - n);
+  for (let i = 0, m = 0; m < missing.length; i++) if (values[i] !== values[i]) missing[m++] = i;
+  return { values, mean: taken, mask: null, total: sum, missing };
+}
+
+/** Value less mean; 0 where missing. */
+function deviationAt({ values, mean: taken }: Centred, index: number): number {
+  const deviation = values[index] - taken;
+  return deviation === deviation ? deviation : 0;
 }
 
 /** What the valid pairs of every lag add up to, besides their products. */
@@ -89,8 +67,8 @@ function pairSumsByGaps(x: Centred, y: Centred, maxLag: number): PairSums {
         const fromStart = shift - 1;
         if (fromEnd >= 0) {
           const lostX = sign > 0 ? fromEnd : fromStart;
-          offX += x.values[lostX];
-          offY += y.values[sign > 0 ? fromStart : fromEnd];
+          offX += deviationAt(x, lostX);
+          offY += deviationAt(y, sign > 0 ? fromStart : fromEnd);
           offMissingX += isMissingX[lostX];
         }
       }
@@ -103,13 +81,13 @@ function pairSumsByGaps(x: Centred, y: Centred, maxLag: number): PairSums {
         for (let m = 0; m < y.missing.length; m++) {
           const i = y.missing[m] - lag;
           if (i >= 0 && i < n) {
-            sumX -= x.values[i];
+            sumX -= deviationAt(x, i);
             if (isMissingX[i] === 0) pairs--;
           }
         }
         for (let m = 0; m < x.missing.length; m++) {
           const j = x.missing[m] + lag;
-          if (j >= 0 && j < n) sumY -= y.values[j];
+          if (j >= 0 && j < n) sumY -= deviationAt(y, j);
         }
       }
       const at = lag + maxLag;
@@ -122,10 +100,10 @@ function pairSumsByGaps(x: Centred, y: Centred, maxLag: number): PairSums {
 }
 
 /** 1 where a sample is there, 0 where it is missing. */
-function maskOf({ missing }: Centred, slot: number, n: number): Float64Array {
-  const mask = workArray(slot, n).fill(1);
-  for (let m = 0; m < missing.length; m++) mask[missing[m]] = 0;
-  return mask;
+function maskOf({ values, missing }: Centred): LaggedSeries {
+  const isThere = new Float64Array(values.length).fill(1);
+  for (let m = 0; m < missing.length; m++) isThere[missing[m]] = 0;
+  return { values: isThere, mean: 0, mask: null };
 }
 
 // Measured on one core of 2.6 GHz: visiting this many gaps takes about as long as the products with both masks.
@@ -175,21 +153,20 @@ export function laggedCovariancesOfAll(
   }));
   if (n === 0) return results;
 
-  const first = centre(x, 0);
-  const series = [first.values];
+  const first = centre(x);
+  const series: LaggedSeries[] = [first];
   const pairs: [number, number][] = [];
-  let slot = 1;
-  const add = (values: Float64Array): number => series.push(values) - 1;
+  const add = (one: LaggedSeries): number => series.push(one) - 1;
   let maskX = -1;
   const asked = others.map((y) => {
-    const second = centre(y, slot++);
-    const values = add(second.values);
+    const second = centre(y);
+    const values = add(second);
     const at = pairs.length;
     pairs.push([0, values]);
     const byMasks = (first.missing.length + second.missing.length) * lags > gapVisitsLimit;
     if (byMasks) {
-      if (maskX < 0) maskX = add(maskOf(first, slot++, n));
-      const maskY = add(maskOf(second, slot++, n));
+      if (maskX < 0) maskX = add(maskOf(first));
+      const maskY = add(maskOf(second));
       pairs.push([maskX, maskY], [0, maskY], [maskX, values]);
     }
     return { second, at, byMasks };
@@ -239,80 +216,48 @@ export function biasedCovariances(
 ): BiasedCovariances[] {
   const longest = series.reduce((most, { x }) => Math.max(most, x.length), 0);
   const reach = Math.max(0, Math.min(maxLag, longest - 1));
-  const centred: Float64Array[] = [];
+  const taking: LaggedSeries[] = [];
   const wanted: [number, number][] = [];
   // A series that comes out the same beside two partners is transformed once.
-  const place = (values: Float64Array): number => {
-    const known = centred.findIndex((other) => isSame(other, values));
-    return known >= 0 ? known : centred.push(values) - 1;
+  const place = (one: LaggedSeries): number => {
+    const known = taking.findIndex(
+      (other) => other.values === one.values && other.mean === one.mean && hasSameGaps(other.mask, one.mask),
+    );
+    return known >= 0 ? known : taking.push(one) - 1;
   };
   const want = (x: number, y: number): number => {
     const known = wanted.findIndex((other) => other[0] === x && other[1] === y);
     return known >= 0 ? known : wanted.push([x, y]) - 1;
   };
-  let slot = 0;
   const asked = series.map(({ x, y }) => {
-    const valuesX = workArray(slot++, x.length);
-    const valuesY = workArray(slot++, x.length);
-    const pairs = fillCentredPairs(x, y, valuesX, valuesY);
-    const [atX, atY] = [place(valuesX), place(valuesY)];
+    const { n: pairs, meanX, meanY } = pairMoments(x, y);
+    const maskX = pairs < countValid(x) ? y : null;
+    const maskY = pairs < countValid(y) ? x : null;
+    const atX = place({ values: x, mean: meanX, mask: maskX });
+    const atY = place({ values: y, mean: meanY, mask: maskY });
     return { pairs, xx: want(atX, atX), yy: want(atY, atY), xy: want(atX, atY) };
   });
-  const sums = laggedProducts(centred, wanted, reach);
-  return asked.map(({ pairs, xx, yy, xy }) => {
-    const scale = pairs > 0 ? 1 / pairs : Number.NaN;
-    const scaled = (values: Float64Array): Float64Array => values.map((value) => value * scale);
-    return {
-      pairs,
-      xx: scaled(sums[xx].subarray(reach)),
-      yy: scaled(sums[yy].subarray(reach)),
-      xy: scaled(sums[xy]),
-    };
-  });
+  const sums = laggedProducts(taking, wanted, reach);
+  return asked.map(({ pairs, xx, yy, xy }) => ({
+    pairs,
+    xx: divided(sums[xx].subarray(reach), pairs),
+    yy: divided(sums[yy].subarray(reach), pairs),
+    xy: divided(sums[xy], pairs),
+  }));
 }
 
-function isSame(a: Float64Array, b: Float64Array): boolean {
-  if (a.length !== b.length) return false;
-  for (let i = 0; i < a.length; i++) if (a[i] !== b[i]) return false;
+/** The values over the number of pairs; NaN without any. */
+function divided(values: Float64Array, pairs: number): Float64Array {
+  const scale = pairs > 0 ? 1 / pairs : Number.NaN;
+  const out = new Float64Array(values.length);
+  for (let i = 0; i < out.length; i++) out[i] = values[i] * scale;
+  return out;
+}
+
+/** Whether two masks leave out the same samples. */
+function hasSameGaps(a: Float64Array | null, b: Float64Array | null): boolean {
+  if (a === b) return true;
+  if (a === null || b === null) return false;
+  for (let i = 0; i < a.length; i++) if ((a[i] === a[i]) !== (b[i] === b[i])) return false;
   return true;
-}
-
-/** Writes x' and y', with zeros at missing pairs. */
-function fillCentredPairs(
-  x: Float64Array,
-  y: Float64Array,
-  intoX: Float64Array,
-  intoY: Float64Array,
-): number {
-  const n = x.length;
-  let pairs = 0;
-  let sumX = 0;
-  let sumY = 0;
-  // Offsets near the mean keep the sums small, so that the means are good to the last digit.
-  let offsetX = 0;
-  let offsetY = 0;
-  let hasOffset = false;
-  for (let i = 0; i < n; i++) {
-    const a = x[i];
-    const b = y[i];
-    if (a !== a || b !== b) continue;
-    if (!hasOffset) {
-      offsetX = a;
-      offsetY = b;
-      hasOffset = true;
-    }
-    sumX += a - offsetX;
-    sumY += b - offsetY;
-    pairs++;
-  }
-  const meanX = offsetX + sumX / pairs;
-  const meanY = offsetY + sumY / pairs;
-  for (let i = 0; i < n; i++) {
-    const a = x[i] - meanX;
-    const b = y[i] - meanY;
-    const isPair = a === a && b === b;
-    intoX[i] = isPair ? a : 0;
-    intoY[i] = isPair ? b : 0;
-  }
-  return pairs;
 }

@@ -1,4 +1,4 @@
-import { kernelBase64 } from './kernel.generated';
+import { createNumericsKernel } from './kernel';
 
 /**
  * Sums of products of real series at many lags, through transforms of blocks.
@@ -14,10 +14,13 @@ import { kernelBase64 } from './kernel.generated';
  *   large-integer arithmetic, Math. Comput. 62, pp. 305–324, for the halving (from memory)
  */
 
-interface KernelExports {
-  spectrumOfBlock(re: number, im: number, count: number, size: number, twist: number, factors: number): void;
-  addProducts(x: number, y: number, z: number, sum: number, apart: number, from: number, to: number): void;
-  sumsOfProducts(re: number, im: number, size: number, twist: number, factorsEnd: number): void;
+/** A real series as it takes part in products: less its mean, and with 0 where it is missing. */
+export interface LaggedSeries {
+  /** NaN where missing (not changed). */
+  values: Float64Array;
+  mean: number;
+  /** Where this one is NaN, `values` count as missing too; null: nowhere. As long as `values`. */
+  mask: Float64Array | null;
 }
 
 /** Where the factors of one block size lie. */
@@ -34,27 +37,15 @@ const PAGE_BYTES = 65_536;
 const smallestBlock = 256;
 /** Between real and imaginary parts, so that they do not compete for the same lines of the cache. */
 const paddingBytes = 192;
-/** Bytes of every spectrum that are multiplied before going on to the next: what is in use then fits the nearest cache. */
-const tileBytes = 2048;
 const keptPlans = 6;
 
 /** Working memory of one thread. Plans lie at its beginning, spectra and sums behind them; it grows to the largest use and stays. */
 class ProductKernel {
   private readonly memory = new WebAssembly.Memory({ initial: 16 });
   private view = new Float64Array(this.memory.buffer);
-  private readonly exports: KernelExports;
+  private readonly run = createNumericsKernel(this.memory);
   private plans = new Map<number, Plan>();
   private plansEnd = 0;
-
-  constructor() {
-    const binary = atob(kernelBase64);
-    const bytes = new Uint8Array(binary.length);
-    for (let i = 0; i < binary.length; i++) bytes[i] = binary.charCodeAt(i);
-    const instance = new WebAssembly.Instance(new WebAssembly.Module(bytes), {
-      env: { memory: this.memory },
-    });
-    this.exports = instance.exports as unknown as KernelExports;
-  }
 
   private reserve(bytes: number): void {
     const missing = bytes - this.memory.buffer.byteLength;
@@ -94,52 +85,59 @@ class ProductKernel {
 
   /** One-sided sums: Σ x(i) y(i + p), p = 0 … size − 1, for each of `sides`, given to `take`. */
   products(
-    series: readonly Float64Array[],
+    series: readonly LaggedSeries[],
     sides: readonly (readonly [number, number])[],
     size: number,
     take: (side: number, sums: Float64Array) => void,
   ): void {
     const plan = this.planFor(size);
-    const apart = size * VALUE_BYTES + paddingBytes;
+    const bytes = size * VALUE_BYTES;
+    const apart = bytes + paddingBytes;
     const pair = 2 * apart;
-    // Spectra of two neighbouring blocks of every series, zeros for what follows the last block, and one sum for each side.
-    const start = this.plansEnd;
+    // A list of pointers, spectra of two neighbouring blocks of every series, zeros for what follows the last block, the sums.
+    const list = this.plansEnd;
+    const start = list + Math.ceil((sides.length * 16) / 64) * 64;
     const nothing = start + 2 * series.length * pair;
     const sums = nothing + pair;
     const end = sums + sides.length * pair;
     this.reserve(end);
-    const { view, exports } = this;
+    const { view, run } = this;
     view.fill(0, nothing / VALUE_BYTES, end / VALUE_BYTES);
+    const pointers = new Uint32Array(this.memory.buffer, list, sides.length * 4);
 
-    const length = series.reduce((most, one) => Math.max(most, one.length), 0);
+    const length = series.reduce((most, { values }) => Math.max(most, values.length), 0);
     const blocks = Math.ceil(length / size);
     const place = (block: number, index: number): number =>
       start + ((block % 2) * series.length + index) * pair;
     const transform = (block: number): void => {
       for (let index = 0; index < series.length; index++) {
-        const from = block * size;
-        const to = Math.min(series[index].length, from + size);
+        const { values, mean, mask } = series[index];
+        const from = Math.min(values.length, block * size);
+        const to = Math.min(values.length, from + size);
         const at = place(block, index);
-        view.set(series[index].subarray(from, to), at / VALUE_BYTES);
-        exports.spectrumOfBlock(at, at + apart, Math.max(0, to - from), size, plan.twist, plan.factors);
+        view.set(values.subarray(from, to), at / VALUE_BYTES);
+        if (mask) view.set(mask.subarray(from, to), (at + apart) / VALUE_BYTES);
+        run.spectrumOfBlock(
+          ...([at, at + apart, to - from, size] as const),
+          ...([mean, mask ? 1 : 0, plan.twist, plan.factors] as const),
+        );
       }
     };
     if (blocks > 0) transform(0);
     for (let block = 0; block < blocks; block++) {
       const isLast = block + 1 === blocks;
       if (!isLast) transform(block + 1);
-      for (let from = 0; from < size * VALUE_BYTES; from += tileBytes) {
-        const to = Math.min(size * VALUE_BYTES, from + tileBytes);
-        for (let side = 0; side < sides.length; side++) {
-          const [x, y] = sides[side];
-          const next = isLast ? nothing : place(block + 1, y);
-          exports.addProducts(place(block, x), place(block, y), next, sums + side * pair, apart, from, to);
-        }
-      }
+      sides.forEach(([x, y], side) => {
+        pointers[4 * side] = place(block, x);
+        pointers[4 * side + 1] = place(block, y);
+        pointers[4 * side + 2] = isLast ? nothing : place(block + 1, y);
+        pointers[4 * side + 3] = sums + side * pair;
+      });
+      run.addProducts(list, sides.length, apart, bytes);
     }
     for (let side = 0; side < sides.length; side++) {
       const at = sums + side * pair;
-      exports.sumsOfProducts(at, at + apart, size, plan.twist, plan.factorsEnd);
+      run.sumsOfProducts(at, at + apart, size, plan.twist, plan.factorsEnd);
       take(side, view.subarray(at / VALUE_BYTES, at / VALUE_BYTES + size));
     }
   }
@@ -150,7 +148,7 @@ let kernel: ProductKernel | null = null;
 /**
  * Σ x(i) y(i + L) for every whole lag from −maxLag to maxLag, over all i for which both samples exist.
  *
- * @param series real series without NaN (not changed); a sample that is to count for nothing is 0
+ * @param series what x and y are taken from; a missing sample counts as 0
  * @param pairs which two series to multiply, by index; a series may be paired with itself
  * @param maxLag largest lag [samples]
  * @returns for each pair 2·maxLag + 1 sums, lag L at index L + maxLag; L > 0: y was recorded later than x
@@ -159,7 +157,7 @@ let kernel: ProductKernel | null = null;
  * @deviates none
  */
 export function laggedProducts(
-  series: readonly Float64Array[],
+  series: readonly LaggedSeries[],
   pairs: readonly (readonly [number, number])[],
   maxLag: number,
 ): Float64Array[] {

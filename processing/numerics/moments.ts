@@ -1,3 +1,5 @@
+import { seriesKernel } from './series-kernel';
+
 /**
  * Means, variances and covariances that keep their digits: always two passes, never mean(x²) − mean(x)², which loses six or more
  * digits for temperatures in kelvin.
@@ -132,16 +134,12 @@ export interface MeanVariance {
  * @deviates none
  */
 export function meanVariance(values: Float64Array, near = mean(values)): MeanVariance {
-  let n = 0;
-  let d1 = 0;
-  let d2 = 0;
-  for (let i = 0; i < values.length; i++) {
-    const d = values[i] - near;
-    if (d !== d) continue;
-    n++;
-    d1 += d;
-    d2 += d * d;
-  }
+  const kernel = seriesKernel(values.length);
+  const { results } = kernel;
+  kernel.run.sums(kernel.pointerOf(values), values.length, near, kernel.out);
+  const n = results[0];
+  const d1 = results[1];
+  const d2 = results[2];
   if (n === 0) return { n, mean: NaN, variance: NaN, isConstant: false };
   const shift = d1 / n;
   const variance = Math.max(0, d2 / n - shift * shift);
@@ -156,24 +154,29 @@ export function meanVariance(values: Float64Array, near = mean(values)): MeanVar
  * @returns mean in the unit of the values; NaN when none is valid
  */
 export function mean(values: Float64Array): number {
-  let n = 0;
-  let sum = 0;
-  let origin = NaN;
-  for (let i = 0; i < values.length; i++) {
-    const value = values[i];
-    if (value !== value) continue;
-    if (n === 0) origin = value;
-    n++;
-    sum += value - origin;
-  }
-  return n === 0 ? NaN : origin + sum / n;
+  const kernel = seriesKernel(values.length);
+  // Sums of differences from one value of the series: small numbers keep their digits.
+  const origin = firstValid(values);
+  kernel.run.sums(kernel.pointerOf(values), values.length, origin, kernel.out);
+  return kernel.results[0] === 0 ? NaN : origin + kernel.results[1] / kernel.results[0];
+}
+
+function firstValid(values: Float64Array): number {
+  let first = 0;
+  while (first < values.length && values[first] !== values[first]) first++;
+  return first < values.length ? values[first] : NaN;
+}
+
+/** Number of valid values and the sum of their differences from an origin; near the mean that sum is small and keeps its digits. */
+export function deviationSum(values: Float64Array, origin: number): { n: number; sum: number } {
+  const kernel = seriesKernel(values.length);
+  kernel.run.sums(kernel.pointerOf(values), values.length, origin, kernel.out);
+  return { n: kernel.results[0], sum: kernel.results[1] };
 }
 
 /** Number of values that are not NaN. */
 export function countValid(values: Float64Array): number {
-  let n = 0;
-  for (let i = 0; i < values.length; i++) if (values[i] === values[i]) n++;
-  return n;
+  return deviationSum(values, 0).n;
 }
 
 /** What two parts of a record add up to: number, means, sums of squared and crossed deviations. */
@@ -240,56 +243,34 @@ export function pairMoments(
   near?: { x: number; y: number },
 ): PartialMoments {
   const first = Math.max(from, from - lag);
-  const last = Math.min(to, to - lag);
+  const length = Math.max(0, Math.min(to, to - lag) - first);
+  const a = x.subarray(first, first + length);
+  const b = y.subarray(first + lag, first + lag + length);
+  const kernel = seriesKernel(length);
+  const { run, results, out } = kernel;
+  const atA = kernel.pointerOf(a, 0);
+  const atB = kernel.pointerOf(b, 1);
   let roughX = near ? near.x : NaN;
   let roughY = near ? near.y : NaN;
   if (roughX !== roughX || roughY !== roughY) {
-    let pairs = 0;
-    let sumX = 0;
-    let sumY = 0;
-    let originX = NaN;
-    let originY = NaN;
-    for (let i = first; i < last; i++) {
-      const a = x[i];
-      const b = y[i + lag];
-      if (a !== a || b !== b) continue;
-      if (pairs === 0) {
-        originX = a;
-        originY = b;
-      }
-      pairs++;
-      sumX += a - originX;
-      sumY += b - originY;
-    }
-    roughX = originX + sumX / pairs;
-    roughY = originY + sumY / pairs;
+    const originX = firstValid(a);
+    const originY = firstValid(b);
+    run.pairSums(atA, atB, length, originX, originY, out);
+    roughX = originX + results[1] / results[0];
+    roughY = originY + results[2] / results[0];
   }
-  let n = 0;
-  let d1x = 0;
-  let d1y = 0;
-  let d2x = 0;
-  let d2y = 0;
-  let dxy = 0;
-  for (let i = first; i < last; i++) {
-    const dx = x[i] - roughX;
-    const dy = y[i + lag] - roughY;
-    const product = dx * dy;
-    if (product !== product) continue;
-    n++;
-    d1x += dx;
-    d1y += dy;
-    d2x += dx * dx;
-    d2y += dy * dy;
-    dxy += product;
-  }
+  run.pairSums(atA, atB, length, roughX, roughY, out);
+  const n = results[0];
+  const d1x = results[1];
+  const d1y = results[2];
   if (n === 0) return { n, meanX: NaN, meanY: NaN, m2x: 0, m2y: 0, cxy: 0 };
   return {
     n,
     meanX: roughX + d1x / n,
     meanY: roughY + d1y / n,
-    m2x: Math.max(0, d2x - (d1x * d1x) / n),
-    m2y: Math.max(0, d2y - (d1y * d1y) / n),
-    cxy: dxy - (d1x * d1y) / n,
+    m2x: Math.max(0, results[3] - (d1x * d1x) / n),
+    m2y: Math.max(0, results[4] - (d1y * d1y) / n),
+    cxy: results[5] - (d1x * d1y) / n,
   };
 }
 

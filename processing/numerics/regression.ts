@@ -1,3 +1,5 @@
+import { seriesKernel } from './series-kernel';
+
 /** A straight line through a series: value at index i = valueAtCentre + slope × (i − centre). */
 export interface Line {
   /** Valid values. */
@@ -28,23 +30,13 @@ export function leastSquaresLine(values: Float64Array): Line {
   while (first < length && values[first] !== values[first]) first++;
   const origin = values[first];
   // Centred times of a complete record add up to 0, their squares to N (N² − 1)/12; the missing ones are taken off.
-  let n = length;
-  let sumT = 0;
-  let sumTT = (length * (length * length - 1)) / 12;
-  let sumX = 0;
-  let sumTX = 0;
-  for (let i = 0; i < length; i++) {
-    const x = values[i] - origin;
-    const t = i - middle;
-    if (x !== x) {
-      n--;
-      sumT -= t;
-      sumTT -= t * t;
-      continue;
-    }
-    sumX += x;
-    sumTX += t * x;
-  }
+  const kernel = seriesKernel(length);
+  kernel.run.lineSums(kernel.pointerOf(values), length, origin, -middle, kernel.out);
+  const n = kernel.results[0];
+  const sumX = kernel.results[1];
+  const sumTX = kernel.results[2];
+  const sumT = 0 - kernel.results[3];
+  const sumTT = (length * (length * length - 1)) / 12 - kernel.results[4];
   if (n === 0) return { n, slope: NaN, centre: NaN, valueAtCentre: NaN };
   const spread = sumTT - (sumT * sumT) / n;
   return {
@@ -65,13 +57,17 @@ export function lineAt(line: Line, index: number): number {
  *
  * @param values Float64Array, not mutated; NaN = missing
  * @param into receives the residuals, same length; NaN stays NaN. May be `values` itself
+ * @param line the least-squares line if it is known
  * @returns the line that was taken out; with fewer than two valid values only the mean is
  * @assumes samples evenly spaced
  * @reference definition
  * @deviates none
  */
-export function removeLine(values: Float64Array, into: Float64Array): Line {
-  const line = leastSquaresLine(values);
+export function removeLine(
+  values: Float64Array,
+  into: Float64Array,
+  line: Line = leastSquaresLine(values),
+): Line {
   const slope = line.n < 2 ? 0 : line.slope;
   for (let i = 0; i < values.length; i++) {
     into[i] = values[i] - line.valueAtCentre - slope * (i - line.centre);

@@ -1,3 +1,6 @@
+import type { SeriesKernel } from './series-kernel';
+import { seriesKernel } from './series-kernel';
+
 /**
  * Medians and quantiles in linear time. Working memory is kept between calls, so a period of six series allocates nothing.
  */
@@ -99,52 +102,42 @@ export function selectInPlace(values: Float64Array, k: number, left: number, rig
 /** Below this many values selecting at once is quicker than counting first. */
 const worthCounting = 2000;
 const bins = 1024;
-const binCounts = new Int32Array(bins);
-/** Work array that the values near an order statistic are gathered in. */
-const gatherSlot = 6;
 
-/** The k-th smallest of some values and the next one in order. */
+/** The k-th smallest of some values and the next one in order; NaN behind the last. */
 interface OrderPair {
   lower: number;
-  /** NaN behind the last. */
   upper: number;
 }
 
 /**
- * Two neighbouring order statistics. Values are counted in equal bins first; only the few of one bin are then set in order.
+ * Two neighbouring order statistics of values without gaps that lie in the kernel's memory. They are counted in bins of equal width first;
+ * only the few of one bin are then set in order.
  *
- * @param values its first n values are looked at and may be reordered; no NaN among them
+ * @param pointer where the values are; not in the second work array
  * @param k 0 … n − 1
- * @param min,max extremes of these values
+ * @param min,max extremes of the values
  */
-function orderPair(values: Float64Array, n: number, k: number, min: number, max: number): OrderPair {
+function orderPair(
+  kernel: SeriesKernel,
+  pointer: number,
+  n: number,
+  k: number,
+  min: number,
+  max: number,
+): OrderPair {
+  const { run, results, out, counts, countValues } = kernel;
   const scale = bins / (max - min);
-  if (n < worthCounting || !(scale > 0 && scale < Infinity)) return selectedPair(values, n, k);
-  const last = bins - 1;
-  binCounts.fill(0);
-  for (let i = 0; i < n; i++) {
-    const bin = ((values[i] - min) * scale) | 0;
-    binCounts[bin > last ? last : bin]++;
-  }
+  const isSpread = n >= worthCounting && scale > 0 && scale < Infinity;
+  if (!isSpread) return selectedPair(kernel.valuesAt(pointer, n), n, k);
+  run.countInBins(pointer, n, min, scale, bins, counts);
   let wanted = 0;
   let before = 0;
-  while (before + binCounts[wanted] <= k) before += binCounts[wanted++];
-  const inside = binCounts[wanted];
-  if (inside > n / 4) return selectedPair(values, n, k);
+  while (before + countValues[wanted] <= k) before += countValues[wanted++];
+  const m = run.takeBin(pointer, n, min, scale, bins, wanted, kernel.work[1], out);
   // The next one in order is in the same bin, or the smallest of those behind it.
-  const isLastInside = k - before === inside - 1;
-  const gathered = scratch(inside + 1, gatherSlot);
-  let m = 0;
-  let behind = Infinity;
-  for (let i = 0; i < n; i++) {
-    const value = values[i];
-    const raw = ((value - min) * scale) | 0;
-    const bin = raw > last ? last : raw;
-    if (bin === wanted) gathered[m++] = value;
-    else if (isLastInside && bin > wanted && value < behind) behind = value;
-  }
-  const pair = selectedPair(gathered, m, k - before);
-  return isLastInside ? { lower: pair.lower, upper: k + 1 < n ? behind : NaN } : pair;
+  const behind = results[0];
+  const pair = selectedPair(kernel.workValues[1], m, k - before);
+  return k - before < m - 1 ? pair : { lower: pair.lower, upper: k + 1 < n ? behind : NaN };
 }
 
 function selectedPair(values: Float64Array, n: number, k: number): OrderPair {
@@ -154,15 +147,9 @@ function selectedPair(values: Float64Array, n: number, k: number): OrderPair {
   return { lower, upper: k + 1 < n ? upper : NaN };
 }
 
-function extremes(values: Float64Array, n: number): { min: number; max: number } {
-  let min = Infinity;
-  let max = -Infinity;
-  for (let i = 0; i < n; i++) {
-    const value = values[i];
-    if (value < min) min = value;
-    if (value > max) max = value;
-  }
-  return { min, max };
+function medianOf({ lower, upper }: OrderPair, n: number): number {
+  // Half of each, so that two huge values do not overflow.
+  return n % 2 === 1 ? lower : lower / 2 + upper / 2;
 }
 
 /**
@@ -186,44 +173,36 @@ export function quantileInPlace(values: Float64Array, n: number, p: number): num
 /** Several quantiles of the same values; see `quantileInPlace`. */
 export function quantilesInPlace(values: Float64Array, n: number, ps: readonly number[]): number[] {
   if (n === 0) return ps.map(() => NaN);
-  const { min, max } = n < worthCounting ? { min: 0, max: 0 } : extremes(values, n);
+  let pairAt = (k: number): OrderPair => selectedPair(values, n, k);
+  if (n >= worthCounting) {
+    const kernel = seriesKernel(n);
+    const pointer = kernel.pointerOf(values.subarray(0, n));
+    kernel.run.sums(pointer, n, 0, kernel.out);
+    const [, , , min, max] = kernel.results;
+    pairAt = (k) => orderPair(kernel, pointer, n, k, min, max);
+  }
   return ps.map((p) => {
     const position = p * (n - 1);
     const k = Math.floor(position);
-    const { lower, upper } = orderPair(values, n, k, min, max);
+    const { lower, upper } = pairAt(k);
     const fraction = position - k;
     return fraction === 0 ? lower : lower + fraction * (upper - lower);
   });
 }
 
 /**
- * Median of the first `n` values of a work array: the middle one, or the mean of the two in the middle.
- *
- * @param values work array, its first n values may be reordered; no NaN among them
- * @returns median; NaN for n = 0
- */
-export function medianInPlace(values: Float64Array, n: number): number {
-  if (n === 0) return NaN;
-  const { min, max } = n < worthCounting ? { min: 0, max: 0 } : extremes(values, n);
-  return medianBetween(values, n, min, max);
-}
-
-function medianBetween(values: Float64Array, n: number, min: number, max: number): number {
-  if (n === 0) return NaN;
-  const { lower, upper } = orderPair(values, n, (n - 1) >> 1, min, max);
-  // Half of each, so that two huge values do not overflow.
-  return n % 2 === 1 ? lower : lower / 2 + upper / 2;
-}
-
-/**
- * Median of the valid values of a series.
+ * Median of the valid values of a series: the middle one, or the mean of the two in the middle.
  *
  * @param values Float64Array, not mutated; NaN = missing
  * @returns median in the unit of the values; NaN when none is valid
  */
 export function median(values: Float64Array): number {
-  const work = scratch(values.length);
-  return medianInPlace(work, takeValid(values, work));
+  const kernel = seriesKernel(values.length);
+  const [work] = kernel.work;
+  const n = kernel.run.takeValid(kernel.pointerOf(values), values.length, work, kernel.out);
+  if (n === 0) return NaN;
+  const [min, max] = kernel.results;
+  return medianOf(orderPair(kernel, work, n, (n - 1) >> 1, min, max), n);
 }
 
 /**
@@ -258,19 +237,15 @@ export interface MedianDeviation {
  * @deviates none
  */
 export function medianAbsoluteDeviation(values: Float64Array): MedianDeviation {
-  const work = scratch(values.length);
-  let n = 0;
-  let min = Infinity;
-  let max = -Infinity;
-  for (let i = 0; i < values.length; i++) {
-    const value = values[i];
-    work[n] = value;
-    if (value < min) min = value;
-    if (value > max) max = value;
-    if (value === value) n++;
-  }
-  const middle = medianBetween(work, n, min, max);
-  for (let i = 0; i < n; i++) work[i] = Math.abs(work[i] - middle);
+  const kernel = seriesKernel(values.length);
+  const [work] = kernel.work;
+  const n = kernel.run.takeValid(kernel.pointerOf(values), values.length, work, kernel.out);
+  if (n === 0) return { n, median: NaN, mad: NaN, farthest: NaN };
+  const [min, max] = kernel.results;
+  const k = (n - 1) >> 1;
+  const middle = medianOf(orderPair(kernel, work, n, k, min, max), n);
   const farthest = Math.max(max - middle, middle - min);
-  return { n, median: middle, mad: medianBetween(work, n, 0, farthest), farthest };
+  kernel.run.deviations(work, n, middle);
+  const mad = medianOf(orderPair(kernel, work, n, k, 0, farthest), n);
+  return { n, median: middle, mad, farthest };
 }

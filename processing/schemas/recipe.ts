@@ -59,7 +59,7 @@ export const recipeSettingsSchema = z.object({
     spikeSharePercent: softHard,
     amplitudeResolution: z.object({
       windowPoints: z.number().int().min(100),
-      bins: z.number().int(),
+      bins: z.number().int().min(10).max(1000),
       emptyPercent: softHard,
     }),
     dropouts: z.object({ interiorPercent: softHard, extremePercent: softHard }),

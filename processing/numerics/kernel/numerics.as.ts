@@ -1,6 +1,7 @@
 /**
- * Transforms and spectral products in double precision, two values at a time. AssemblyScript, compiled by scripts/build-wasm.mjs into
- * ../kernel.generated.ts. All memory is laid out by ../kernel.ts; nothing is allocated here.
+ * Transforms, sums and counts over whole series in double precision, two values at a time. AssemblyScript, compiled by
+ * scripts/build-wasm.mjs into ../kernel.generated.ts. Memory is laid out by ../lagged-products.ts and ../series-kernel.ts; nothing is
+ * allocated here. NaN is a missing sample everywhere but in transforms.
  *
  * A transform has a power of two as its length, keeps real and imaginary parts in two arrays, works in place, and leaves its values in
  * the order in which the stages put them. The inverse takes them in that same order, and what happens in between happens value by value,
@@ -12,6 +13,8 @@
 
 /** Bytes of factors for two values of j. */
 const FACTORS: usize = 96;
+
+// ------------------------------------------------------------------------------------------------------------ stages
 
 /** Stage of four over sub-transforms of `length` values, forward. */
 // @ts-ignore: decorator
@@ -182,21 +185,451 @@ function joinFours(re: usize, im: usize, bytes: usize): void {
   }
 }
 
+// ------------------------------------------------------------------------------------------------------------ sums
+
+// @ts-ignore: decorator
+@inline
+function lanesAdded(v: v128): f64 {
+  return f64x2.extract_lane(v, 0) + f64x2.extract_lane(v, 1);
+}
+
+/** Loads two values, or one and a NaN at the odd end. */
+// @ts-ignore: decorator
+@inline
+function loadUpTo(at: usize, end: usize): v128 {
+  return at + 8 === end ? f64x2.replace_lane(v128.load64_zero(at), 1, NaN) : v128.load(at);
+}
+
+/** out: valid values, Σd, Σd², min, max, with d = x − origin. */
+export function sums(x: usize, n: i32, origin: f64, out: usize): void {
+  const end = x + (n << 3);
+  const o = f64x2.splat(origin);
+  let count = i64x2.splat(0);
+  let s1 = f64x2.splat(0);
+  let s2 = f64x2.splat(0);
+  let t1 = f64x2.splat(0);
+  let t2 = f64x2.splat(0);
+  let min = f64x2.splat(Infinity);
+  let max = f64x2.splat(-Infinity);
+  let at = x;
+  for (; at + 32 <= end; at += 32) {
+    const a = v128.load(at);
+    const b = v128.load(at, 16);
+    const ma = f64x2.eq(a, a);
+    const mb = f64x2.eq(b, b);
+    const da = v128.and(f64x2.sub(a, o), ma);
+    const db = v128.and(f64x2.sub(b, o), mb);
+    count = i64x2.sub(count, i64x2.add(ma, mb));
+    s1 = f64x2.add(s1, da);
+    t1 = f64x2.add(t1, db);
+    s2 = f64x2.add(s2, f64x2.mul(da, da));
+    t2 = f64x2.add(t2, f64x2.mul(db, db));
+    min = f64x2.pmin(f64x2.pmin(min, a), b);
+    max = f64x2.pmax(f64x2.pmax(max, a), b);
+  }
+  for (; at < end; at += 16) {
+    const a = loadUpTo(at, end);
+    const ma = f64x2.eq(a, a);
+    const da = v128.and(f64x2.sub(a, o), ma);
+    count = i64x2.sub(count, ma);
+    s1 = f64x2.add(s1, da);
+    s2 = f64x2.add(s2, f64x2.mul(da, da));
+    min = f64x2.pmin(min, a);
+    max = f64x2.pmax(max, a);
+  }
+  store<f64>(out, <f64>(i64x2.extract_lane(count, 0) + i64x2.extract_lane(count, 1)));
+  store<f64>(out, lanesAdded(f64x2.add(s1, t1)), 8);
+  store<f64>(out, lanesAdded(f64x2.add(s2, t2)), 16);
+  store<f64>(out, Math.min(f64x2.extract_lane(min, 0), f64x2.extract_lane(min, 1)), 24);
+  store<f64>(out, Math.max(f64x2.extract_lane(max, 0), f64x2.extract_lane(max, 1)), 32);
+}
+
+/** out: valid values, Σd, Σtd over them, Σt, Σt² over the missing ones, with d = x − origin and t = start + index. */
+export function lineSums(x: usize, n: i32, origin: f64, start: f64, out: usize): void {
+  const end = x + (n << 3);
+  const o = f64x2.splat(origin);
+  const two = f64x2.splat(2);
+  let t = f64x2.replace_lane(f64x2.splat(start), 1, start + 1);
+  let count = i64x2.splat(0);
+  let sumD = f64x2.splat(0);
+  let sumTD = f64x2.splat(0);
+  let missingT = f64x2.splat(0);
+  let missingTT = f64x2.splat(0);
+  for (let at = x; at < end; at += 16) {
+    const isOdd = at + 8 === end;
+    const a = loadUpTo(at, end);
+    const m = f64x2.eq(a, a);
+    const d = v128.and(f64x2.sub(a, o), m);
+    count = i64x2.sub(count, m);
+    sumD = f64x2.add(sumD, d);
+    sumTD = f64x2.add(sumTD, f64x2.mul(t, d));
+    let gone = v128.andnot(t, m);
+    if (isOdd) gone = f64x2.replace_lane(gone, 1, 0);
+    missingT = f64x2.add(missingT, gone);
+    missingTT = f64x2.add(missingTT, f64x2.mul(gone, gone));
+    t = f64x2.add(t, two);
+  }
+  store<f64>(out, <f64>(i64x2.extract_lane(count, 0) + i64x2.extract_lane(count, 1)));
+  store<f64>(out, lanesAdded(sumD), 8);
+  store<f64>(out, lanesAdded(sumTD), 16);
+  store<f64>(out, lanesAdded(missingT), 24);
+  store<f64>(out, lanesAdded(missingTT), 32);
+}
+
+/** out: Σd², Σr², Σr³, Σr⁴, min, max, with d = x − mean and r = d − slope t, t = start + index. */
+export function residualSums(x: usize, n: i32, mean: f64, slope: f64, start: f64, out: usize): void {
+  const end = x + (n << 3);
+  const o = f64x2.splat(mean);
+  const b = f64x2.splat(slope);
+  const two = f64x2.splat(2);
+  let t = f64x2.replace_lane(f64x2.splat(start), 1, start + 1);
+  let d2 = f64x2.splat(0);
+  let r2 = f64x2.splat(0);
+  let r3 = f64x2.splat(0);
+  let r4 = f64x2.splat(0);
+  let min = f64x2.splat(Infinity);
+  let max = f64x2.splat(-Infinity);
+  for (let at = x; at < end; at += 16) {
+    const a = loadUpTo(at, end);
+    const m = f64x2.eq(a, a);
+    const d = v128.and(f64x2.sub(a, o), m);
+    const r = v128.and(f64x2.sub(d, f64x2.mul(b, t)), m);
+    const square = f64x2.mul(r, r);
+    d2 = f64x2.add(d2, f64x2.mul(d, d));
+    r2 = f64x2.add(r2, square);
+    r3 = f64x2.add(r3, f64x2.mul(square, r));
+    r4 = f64x2.add(r4, f64x2.mul(square, square));
+    min = f64x2.pmin(min, a);
+    max = f64x2.pmax(max, a);
+    t = f64x2.add(t, two);
+  }
+  store<f64>(out, lanesAdded(d2));
+  store<f64>(out, lanesAdded(r2), 8);
+  store<f64>(out, lanesAdded(r3), 16);
+  store<f64>(out, lanesAdded(r4), 24);
+  store<f64>(out, Math.min(f64x2.extract_lane(min, 0), f64x2.extract_lane(min, 1)), 32);
+  store<f64>(out, Math.max(f64x2.extract_lane(max, 0), f64x2.extract_lane(max, 1)), 40);
+}
+
+/** out: valid pairs, Σa, Σb, Σa², Σb², Σab, with a = x − nearX, b = y − nearY. */
+export function pairSums(x: usize, y: usize, n: i32, nearX: f64, nearY: f64, out: usize): void {
+  const end = x + (n << 3);
+  const ox = f64x2.splat(nearX);
+  const oy = f64x2.splat(nearY);
+  let count = i64x2.splat(0);
+  let s1x = f64x2.splat(0);
+  let s1y = f64x2.splat(0);
+  let s2x = f64x2.splat(0);
+  let s2y = f64x2.splat(0);
+  let sxy = f64x2.splat(0);
+  const shift = y - x;
+  for (let at = x; at < end; at += 16) {
+    const a = f64x2.sub(loadUpTo(at, end), ox);
+    const b = f64x2.sub(loadUpTo(at + shift, end + shift), oy);
+    const p = f64x2.mul(a, b);
+    const m = f64x2.eq(p, p);
+    const da = v128.and(a, m);
+    const db = v128.and(b, m);
+    count = i64x2.sub(count, m);
+    s1x = f64x2.add(s1x, da);
+    s1y = f64x2.add(s1y, db);
+    s2x = f64x2.add(s2x, f64x2.mul(da, da));
+    s2y = f64x2.add(s2y, f64x2.mul(db, db));
+    sxy = f64x2.add(sxy, v128.and(p, m));
+  }
+  store<f64>(out, <f64>(i64x2.extract_lane(count, 0) + i64x2.extract_lane(count, 1)));
+  store<f64>(out, lanesAdded(s1x), 8);
+  store<f64>(out, lanesAdded(s1y), 16);
+  store<f64>(out, lanesAdded(s2x), 24);
+  store<f64>(out, lanesAdded(s2y), 32);
+  store<f64>(out, lanesAdded(sxy), 40);
+}
+
+// ------------------------------------------------------------------------------------------------------------ order
+
+/** Copies the valid values to `into`; out: min, max. Returns how many there are. */
+export function takeValid(x: usize, n: i32, into: usize, out: usize): i32 {
+  const end = x + (n << 3);
+  let to = into;
+  let min = f64x2.splat(Infinity);
+  let max = f64x2.splat(-Infinity);
+  for (let at = x; at < end; at += 16) {
+    const a = loadUpTo(at, end);
+    min = f64x2.pmin(min, a);
+    max = f64x2.pmax(max, a);
+    const valid = i64x2.bitmask(f64x2.eq(a, a));
+    if (valid === 3) {
+      v128.store(to, a);
+      to += 16;
+    } else if (valid !== 0) {
+      store<f64>(to, valid === 1 ? f64x2.extract_lane(a, 0) : f64x2.extract_lane(a, 1));
+      to += 8;
+    }
+  }
+  store<f64>(out, Math.min(f64x2.extract_lane(min, 0), f64x2.extract_lane(min, 1)));
+  store<f64>(out, Math.max(f64x2.extract_lane(max, 0), f64x2.extract_lane(max, 1)), 8);
+  return <i32>((to - into) >> 3);
+}
+
+/** x = |x − middle|, without gaps. */
+export function deviations(x: usize, n: i32, middle: f64): void {
+  const o = f64x2.splat(middle);
+  const end = x + (((n + 1) & ~1) << 3);
+  for (let at = x; at < end; at += 16) v128.store(at, f64x2.abs(f64x2.sub(v128.load(at), o)));
+}
+
+// @ts-ignore: decorator
+@inline
+function binsOf(v: v128, low: v128, scale: v128, last: v128): v128 {
+  return i32x4.min_s(i32x4.trunc_sat_f64x2_s_zero(f64x2.mul(f64x2.sub(v, low), scale)), last);
+}
+
+/** Counts values, none of them missing, in bins of equal width; `counts` holds twice as many 32-bit numbers as there are bins. */
+export function countInBins(x: usize, n: i32, min: f64, scale: f64, bins: i32, counts: usize): void {
+  memory.fill(counts, 0, bins << 3);
+  const second = counts + (bins << 2);
+  const low = f64x2.splat(min);
+  const factor = f64x2.splat(scale);
+  const last = i32x4.splat(bins - 1);
+  const end = x + (n << 3);
+  let at = x;
+  for (; at + 16 <= end; at += 16) {
+    const bin = binsOf(v128.load(at), low, factor, last);
+    // Two tables: neighbours are often in one bin, and the second would wait for the first.
+    const a = counts + (i32x4.extract_lane(bin, 0) << 2);
+    const b = second + (i32x4.extract_lane(bin, 1) << 2);
+    store<i32>(a, load<i32>(a) + 1);
+    store<i32>(b, load<i32>(b) + 1);
+  }
+  if (at < end) {
+    const a = counts + (i32x4.extract_lane(binsOf(v128.load64_zero(at), low, factor, last), 0) << 2);
+    store<i32>(a, load<i32>(a) + 1);
+  }
+  for (let bin = counts; bin < second; bin += 4) {
+    store<i32>(bin, load<i32>(bin) + load<i32>(bin + (bins << 2)));
+  }
+}
+
+/** Copies the values of one bin to `into`; out: smallest value of the bins behind. Returns how many were copied. */
+export function takeBin(
+  x: usize,
+  n: i32,
+  min: f64,
+  scale: f64,
+  bins: i32,
+  wanted: i32,
+  into: usize,
+  out: usize,
+): i32 {
+  const low = f64x2.splat(min);
+  const factor = f64x2.splat(scale);
+  const last = i32x4.splat(bins - 1);
+  const want = i32x4.splat(wanted);
+  const none = f64x2.splat(Infinity);
+  let behind = none;
+  let to = into;
+  const end = x + (n << 3);
+  for (let at = x; at < end; at += 16) {
+    const isOdd = at + 8 === end;
+    const v = isOdd ? f64x2.replace_lane(v128.load64_zero(at), 1, -Infinity) : v128.load(at);
+    const bin = binsOf(v, low, factor, last);
+    behind = f64x2.pmin(behind, v128.bitselect(v, none, i64x2.extend_low_i32x4_s(i32x4.gt_s(bin, want))));
+    const hit = i32x4.bitmask(i32x4.eq(bin, want)) & (isOdd ? 1 : 3);
+    if (hit !== 0) {
+      if (hit & 1) {
+        store<f64>(to, f64x2.extract_lane(v, 0));
+        to += 8;
+      }
+      if (hit & 2) {
+        store<f64>(to, f64x2.extract_lane(v, 1));
+        to += 8;
+      }
+    }
+  }
+  store<f64>(out, Math.min(f64x2.extract_lane(behind, 0), f64x2.extract_lane(behind, 1)));
+  return <i32>((to - into) >> 3);
+}
+
+// ------------------------------------------------------------------------------------------------------------ windows
+
+/** total[i] = Σ d, squares[i] = Σ d² over the first i values, with d = x − offset; nothing missing. n + 1 values each. */
+export function runningSums(x: usize, n: i32, offset: f64, total: usize, squares: usize): void {
+  let sum: f64 = 0;
+  let square: f64 = 0;
+  store<f64>(total, 0);
+  store<f64>(squares, 0);
+  for (let i = 0; i < n; i++) {
+    const d = load<f64>(x + (i << 3)) - offset;
+    sum += d;
+    square += d * d;
+    store<f64>(total + (i << 3), sum, 8);
+    store<f64>(squares + (i << 3), square, 8);
+  }
+}
+
+/** Places that are looked at together for whether one of them is a new largest one. */
+const STRETCH: usize = 512;
+
 /**
- * Values of a real series × exp(−iπj/2B), then their transform: the spectrum of B values followed by B zeros at its odd frequencies.
+ * Largest steps between the halves of a sliding window, from running sums; out: n |step of the mean|, its place, n |step of the
+ * variance|, its place, with n = half. With s and q the sums of either half: s₂ − s₁, and (q₂ − q₁) − (s₂ − s₁)(s₂ + s₁)/n.
+ */
+export function largestSteps(total: usize, squares: usize, n: i32, half: i32, out: usize): void {
+  const reach: usize = half << 3;
+  const perSample = f64x2.splat(1.0 / <f64>half);
+  const shift = squares - total;
+  const first = total + reach;
+  const end = total + (<usize>(n - half + 1) << 3);
+  let meanStep: f64 = -1;
+  let meanAt: usize = first;
+  let varianceStep: f64 = -1;
+  let varianceAt: usize = first;
+  for (let from = first; from < end; from += STRETCH) {
+    const to = from + STRETCH < end ? from + STRETCH : end;
+    let largest = f64x2.splat(-1);
+    let largestChange = f64x2.splat(-1);
+    let at = from;
+    // The odd last place is looked at twice rather than apart.
+    if (to - from >= 16) {
+      for (; at < to; at += 16) {
+        if (at + 8 === to) at -= 8;
+        const here = v128.load(at);
+        const before = v128.load(at - reach);
+        const after = v128.load(at + reach);
+        const step = f64x2.sub(f64x2.sub(after, here), f64x2.sub(here, before));
+        largest = f64x2.pmax(largest, f64x2.abs(step));
+        const s = at + shift;
+        const middle = v128.load(s);
+        const squaresStep = f64x2.sub(
+          f64x2.sub(v128.load(s + reach), middle),
+          f64x2.sub(middle, v128.load(s - reach)),
+        );
+        const change = f64x2.sub(squaresStep, f64x2.mul(f64x2.mul(step, f64x2.sub(after, before)), perSample));
+        largestChange = f64x2.pmax(largestChange, f64x2.abs(change));
+      }
+    } else {
+      largest = f64x2.splat(Infinity);
+      largestChange = largest;
+    }
+    const best = Math.max(f64x2.extract_lane(largest, 0), f64x2.extract_lane(largest, 1));
+    const bestChange = Math.max(f64x2.extract_lane(largestChange, 0), f64x2.extract_lane(largestChange, 1));
+    if (best <= meanStep && bestChange <= varianceStep) continue;
+    for (let place = from; place < to; place += 8) {
+      const here = load<f64>(place);
+      const before = load<f64>(place - reach);
+      const after = load<f64>(place + reach);
+      const step = after - here - (here - before);
+      if (Math.abs(step) > meanStep) {
+        meanStep = Math.abs(step);
+        meanAt = place;
+      }
+      const s = place + shift;
+      const squaresStep = load<f64>(s + reach) - load<f64>(s) - (load<f64>(s) - load<f64>(s - reach));
+      const change = Math.abs(squaresStep - step * (after - before) * f64x2.extract_lane(perSample, 0));
+      if (change > varianceStep) {
+        varianceStep = change;
+        varianceAt = place;
+      }
+    }
+  }
+  store<f64>(out, meanStep);
+  store<f64>(out, <f64>((meanAt - total) >> 3), 8);
+  store<f64>(out, varianceStep, 16);
+  store<f64>(out, <f64>((varianceAt - total) >> 3), 24);
+}
+
+let runBin: i32 = -1;
+let runLength: i32 = 0;
+let inCompany: i32 = 0;
+
+// @ts-ignore: decorator
+@inline
+function goOn(bin: i32, counts: usize, longest: usize): void {
+  const isSame = bin === runBin;
+  const run = select<i32>(runLength + 1, 1, isSame);
+  const at = bin << 2;
+  store<i32>(counts + at, load<i32>(counts + at) + 1);
+  const known = load<i32>(longest + at);
+  store<i32>(longest + at, select<i32>(run, known, run > known));
+  inCompany += select<i32>(select<i32>(2, 1, run === 2), 0, isSame);
+  runBin = bin;
+  runLength = run;
+}
+
+/**
+ * Counts values, none of them missing, in bins, and the longest run of each bin; values beyond the ends count in the end bins.
+ *
+ * @param counts,longest one 32-bit number for each bin
+ * @returns how many values have a neighbour in the same bin
+ */
+export function runsInBins(
+  x: usize,
+  n: i32,
+  low: f64,
+  width: f64,
+  bins: i32,
+  counts: usize,
+  longest: usize,
+): i32 {
+  memory.fill(counts, 0, bins << 2);
+  memory.fill(longest, 0, bins << 2);
+  const begin = f64x2.splat(low);
+  const step = f64x2.splat(width);
+  const last = i32x4.splat(bins - 1);
+  const zero = i32x4.splat(0);
+  runBin = -1;
+  runLength = 0;
+  inCompany = 0;
+  const end = x + (n << 3);
+  let at = x;
+  for (; at + 16 <= end; at += 16) {
+    const raw = i32x4.trunc_sat_f64x2_s_zero(f64x2.div(f64x2.sub(v128.load(at), begin), step));
+    const bin = i32x4.max_s(i32x4.min_s(raw, last), zero);
+    goOn(i32x4.extract_lane(bin, 0), counts, longest);
+    goOn(i32x4.extract_lane(bin, 1), counts, longest);
+  }
+  if (at < end) {
+    const raw = i32x4.trunc_sat_f64x2_s_zero(f64x2.div(f64x2.sub(v128.load64_zero(at), begin), step));
+    goOn(i32x4.extract_lane(i32x4.max_s(i32x4.min_s(raw, last), zero), 0), counts, longest);
+  }
+  return inCompany;
+}
+
+// ------------------------------------------------------------------------------------------------------------ transforms of blocks
+
+/**
+ * Values of a real series, less their mean, × exp(−iπj/2B), then their transform: the spectrum of B values followed by B zeros at its odd
+ * frequencies. Missing values count as 0.
  *
  * @param re holds `count` real values and receives the real parts, im the imaginary parts; `size` = B values each
+ * @param isMasked im then holds `count` values of another series; where that is missing, so is this one
  * @param twist cos, −sin of πj/2B, two values of j at a time
  */
-export function spectrumOfBlock(re: usize, im: usize, count: usize, size: usize, twist: usize, factors: usize): void {
+export function spectrumOfBlock(
+  re: usize,
+  im: usize,
+  count: usize,
+  size: usize,
+  mean: f64,
+  isMasked: bool,
+  twist: usize,
+  factors: usize,
+): void {
   const bytes = size << 3;
   const filled = (count + 1) & ~1;
-  if (count < filled) store<f64>(re + (count << 3), 0);
+  if (count < filled) store<f64>(re + (count << 3), NaN);
   const end = re + (filled << 3);
+  const level = f64x2.splat(mean);
   let i = im;
   let t = twist;
   for (let r = re; r < end; r += 16) {
-    const x = v128.load(r);
+    const raw = v128.load(r);
+    let valid = f64x2.eq(raw, raw);
+    if (isMasked) {
+      const other = v128.load(i);
+      valid = v128.and(valid, f64x2.eq(other, other));
+    }
+    const x = v128.and(f64x2.sub(raw, level), valid);
     v128.store(r, f64x2.mul(x, v128.load(t)));
     v128.store(i, f64x2.mul(x, v128.load(t, 16)));
     i += 16;
@@ -220,21 +653,35 @@ export function spectrumOfBlock(re: usize, im: usize, count: usize, size: usize,
   }
 }
 
+/** Bytes of every spectrum that are multiplied before going on to the next: what is in use then fits the nearest cache. */
+const TILE: usize = 2048;
+
 /**
  * Adds conj(X) (Y − iZ): the products of one block of x with the window that begins with the same block of y and goes on with the next.
  *
- * @param x,y,z,sum real parts; the imaginary parts lie `apart` bytes behind. `from`, `to`: bytes
+ * @param list four pointers for each of `count` sums: x, y, z, sum, at their real parts; the imaginary parts lie `apart` bytes behind
+ * @param bytes of one part
  */
-export function addProducts(x: usize, y: usize, z: usize, sum: usize, apart: usize, from: usize, to: usize): void {
-  for (let at = from; at < to; at += 16) {
-    const xr = v128.load(x + at);
-    const xi = v128.load(x + apart + at);
-    const wr = f64x2.add(v128.load(y + at), v128.load(z + apart + at));
-    const wi = f64x2.sub(v128.load(y + apart + at), v128.load(z + at));
-    const sr = v128.load(sum + at);
-    const si = v128.load(sum + apart + at);
-    v128.store(sum + at, f64x2.add(sr, f64x2.add(f64x2.mul(xr, wr), f64x2.mul(xi, wi))));
-    v128.store(sum + apart + at, f64x2.add(si, f64x2.sub(f64x2.mul(xr, wi), f64x2.mul(xi, wr))));
+export function addProducts(list: usize, count: i32, apart: usize, bytes: usize): void {
+  const listEnd = list + (<usize>count << 4);
+  for (let from: usize = 0; from < bytes; from += TILE) {
+    const to = from + TILE < bytes ? from + TILE : bytes;
+    for (let entry = list; entry < listEnd; entry += 16) {
+      const x = <usize>load<u32>(entry);
+      const y = <usize>load<u32>(entry, 4);
+      const z = <usize>load<u32>(entry, 8);
+      const sum = <usize>load<u32>(entry, 12);
+      for (let at = from; at < to; at += 16) {
+        const xr = v128.load(x + at);
+        const xi = v128.load(x + apart + at);
+        const wr = f64x2.add(v128.load(y + at), v128.load(z + apart + at));
+        const wi = f64x2.sub(v128.load(y + apart + at), v128.load(z + at));
+        const sr = v128.load(sum + at);
+        const si = v128.load(sum + apart + at);
+        v128.store(sum + at, f64x2.add(sr, f64x2.add(f64x2.mul(xr, wr), f64x2.mul(xi, wi))));
+        v128.store(sum + apart + at, f64x2.add(si, f64x2.sub(f64x2.mul(xr, wi), f64x2.mul(xi, wr))));
+      }
+    }
   }
 }
 

@@ -1,6 +1,8 @@
 import { defaultValue } from '../../defaults';
 import { isConstantSignal } from '../../numerics/moments';
-import { quantileInPlace, scratch } from '../../numerics/selection';
+import { quantileInPlace } from '../../numerics/selection';
+import type { SeriesKernel } from '../../numerics/series-kernel';
+import { seriesKernel } from '../../numerics/series-kernel';
 
 /** Span of the histogram [σ], unless the range of the window is smaller. */
 const spanSigma = defaultValue('screening.binSpanSigma');
@@ -57,8 +59,14 @@ export function amplitudeTests(
     extremeAt: -1,
     sameBinShare: NaN,
   };
+  const kernel = seriesKernel(values.length);
+  const { run } = kernel;
+  const at = kernel.pointerOf(values);
   const counts = new Int32Array(bins);
   const longest = new Int32Array(bins);
+  const longestAt = kernel.counts + counts.byteLength;
+  const [work] = kernel.work;
+  const [workValues] = kernel.workValues;
   let mostEmpty = -1;
   let bestInterior = -1;
   let bestExtreme = -1;
@@ -69,12 +77,12 @@ export function amplitudeTests(
   const whole = windowPoints % stepPoints === 0;
   const parts: Spread[] = [];
   for (let start = 0; whole && start + stepPoints <= values.length; start += stepPoints) {
-    parts.push(spread(values, start, start + stepPoints));
+    parts.push(spread(kernel, at, start, start + stepPoints));
   }
 
   for (let start = 0; start + windowPoints <= values.length; start += stepPoints) {
     const end = start + windowPoints;
-    let part = whole ? parts[start / stepPoints] : spread(values, start, end);
+    let part = whole ? parts[start / stepPoints] : spread(kernel, at, start, end);
     for (let k = 1; whole && k < windowPoints / stepPoints; k++) {
       part = joined(part, parts[start / stepPoints + k]);
     }
@@ -101,28 +109,15 @@ export function amplitudeTests(
     const low = isWide ? mean - span / 2 : min;
     const width = (isWide ? span : range) / bins;
 
-    counts.fill(0);
-    longest.fill(0);
-    const last = bins - 1;
-    let previous = -1;
-    let run = 0;
-    for (let i = start; i < end; i++) {
-      const value = values[i];
-      if (value !== value) continue;
-      let bin = ((value - low) / width) | 0;
-      if (bin < 0) bin = 0;
-      else if (bin > last) bin = last;
-      counts[bin]++;
-      if (bin === previous) {
-        run++;
-        same += run === 2 ? 2 : 1;
-      } else {
-        if (previous >= 0 && run > longest[previous]) longest[previous] = run;
-        previous = bin;
-        run = 1;
-      }
+    // What is missing does not end a run.
+    let from = at + start * values.BYTES_PER_ELEMENT;
+    if (n < windowPoints) {
+      run.takeValid(from, windowPoints, work, kernel.out);
+      from = work;
     }
-    if (run > longest[previous]) longest[previous] = run;
+    same += run.runsInBins(from, n, low, width, bins, kernel.counts, longestAt);
+    counts.set(kernel.countValues.subarray(0, bins));
+    longest.set(kernel.countValues.subarray(bins, 2 * bins));
 
     let empty = 0;
     for (let bin = 0; bin < bins; bin++) if (counts[bin] === 0) empty++;
@@ -147,11 +142,10 @@ export function amplitudeTests(
         else if (before >= lowIndex + 2 && through <= highIndex) extreme = false;
         else {
           if (lowValue !== lowValue) {
-            const work = scratch(windowPoints);
             let m = 0;
-            for (let i = start; i < end; i++) if (values[i] === values[i]) work[m++] = values[i];
-            lowValue = quantileInPlace(work, n, lowPercentile);
-            highValue = quantileInPlace(work, n, highPercentile);
+            for (let i = start; i < end; i++) if (values[i] === values[i]) workValues[m++] = values[i];
+            lowValue = quantileInPlace(workValues, n, lowPercentile);
+            highValue = quantileInPlace(workValues, n, highPercentile);
           }
           const centre = low + (bin + 0.5) * width;
           extreme = centre < lowValue || centre > highValue;
@@ -187,26 +181,16 @@ interface Spread {
   max: number;
 }
 
-function spread(values: Float64Array, from: number, to: number): Spread {
-  let n = 0;
-  let sum = 0;
-  let min = Infinity;
-  let max = -Infinity;
-  for (let i = from; i < to; i++) {
-    const value = values[i];
-    if (value !== value) continue;
-    n++;
-    sum += value;
-    if (value < min) min = value;
-    if (value > max) max = value;
-  }
-  const mean = n === 0 ? NaN : sum / n;
-  let squares = 0;
-  for (let i = from; i < to; i++) {
-    const d = values[i] - mean;
-    if (d === d) squares += d * d;
-  }
-  return { n, mean, squares, min, max };
+function spread(kernel: SeriesKernel, at: number, from: number, to: number): Spread {
+  const { run, results, out } = kernel;
+  const pointer = at + from * Float64Array.BYTES_PER_ELEMENT;
+  run.sums(pointer, to - from, 0, out);
+  const n = results[0];
+  const mean = n === 0 ? NaN : results[1] / n;
+  const min = results[3];
+  const max = results[4];
+  run.sums(pointer, to - from, mean, out);
+  return { n, mean, squares: results[2], min, max };
 }
 
 function joined(a: Spread, b: Spread): Spread {

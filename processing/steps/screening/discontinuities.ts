@@ -1,5 +1,5 @@
 import { defaultValue } from '../../defaults';
-import { scratch } from '../../numerics/selection';
+import { seriesKernel } from '../../numerics/series-kernel';
 import type { RecordStatistics } from './record';
 
 const rangeDivisor = defaultValue('screening.haarRangeDivisor');
@@ -40,75 +40,59 @@ export function discontinuities(
   if (half < 1 || length < 2 * half || record.n === 0 || record.isConstant) return nothing;
 
   // Running sums of (x − mean) and its square; the offset keeps their digits.
-  const sums = scratch(length + 1, 1);
-  const squares = scratch(length + 1, 2);
-  const valid = scratch(length + 1, 3);
   const isComplete = record.n === length;
   const offset = record.mean;
-  let sum = 0;
-  let square = 0;
-  let count = 0;
-  sums[0] = 0;
-  squares[0] = 0;
-  valid[0] = 0;
-  for (let i = 0; i < length; i++) {
-    const d = values[i] - offset;
-    if (d === d) {
-      sum += d;
-      square += d * d;
-      count++;
-    }
-    sums[i + 1] = sum;
-    squares[i + 1] = square;
-    if (!isComplete) valid[i + 1] = count;
-  }
-
-  const fewest = minimumValidShare * half;
   let meanStep = -1;
   let meanStepAt = -1;
   let varianceStep = -1;
   let varianceStepAt = -1;
+  const kernel = seriesKernel(length);
   if (isComplete) {
-    // With n samples in either half, s their sums and q their sums of squares: n times the step in the mean is s₂ − s₁, and n times that
-    // in the variance (q₂ − q₁) − (s₂ − s₁)(s₂ + s₁)/n.
-    const perSample = 1 / half;
+    const { run, work, out, results } = kernel;
+    run.runningSums(kernel.pointerOf(values), length, offset, work[0], work[1]);
+    run.largestSteps(work[0], work[1], length, half, out);
+    meanStep = results[0] / half;
+    meanStepAt = results[1];
+    varianceStep = results[2] / half;
+    varianceStepAt = results[3];
+  } else {
+    const [sums, squares, valid] = kernel.workValues;
+    let sum = 0;
+    let square = 0;
+    let count = 0;
+    sums[0] = 0;
+    squares[0] = 0;
+    valid[0] = 0;
+    for (let i = 0; i < length; i++) {
+      const d = values[i] - offset;
+      if (d === d) {
+        sum += d;
+        square += d * d;
+        count++;
+      }
+      sums[i + 1] = sum;
+      squares[i + 1] = square;
+      valid[i + 1] = count;
+    }
+    const fewest = minimumValidShare * half;
     for (let i = half; i <= length - half; i++) {
-      const before = sums[i - half];
-      const here = sums[i];
-      const after = sums[i + half];
-      const stepOfSums = after - here - (here - before);
-      const step = Math.abs(stepOfSums);
+      const nLeft = valid[i] - valid[i - half];
+      const nRight = valid[i + half] - valid[i];
+      if (nLeft < fewest || nRight < fewest || nLeft === 0 || nRight === 0) continue;
+      const left = (sums[i] - sums[i - half]) / nLeft;
+      const right = (sums[i + half] - sums[i]) / nRight;
+      const step = Math.abs(right - left);
       if (step > meanStep) {
         meanStep = step;
         meanStepAt = i;
       }
-      const stepOfSquares = squares[i + half] - squares[i] - (squares[i] - squares[i - half]);
-      const change = Math.abs(stepOfSquares - stepOfSums * (after - before) * perSample);
+      const varianceLeft = Math.max(0, (squares[i] - squares[i - half]) / nLeft - left * left);
+      const varianceRight = Math.max(0, (squares[i + half] - squares[i]) / nRight - right * right);
+      const change = Math.abs(varianceRight - varianceLeft);
       if (change > varianceStep) {
         varianceStep = change;
         varianceStepAt = i;
       }
-    }
-    meanStep *= perSample;
-    varianceStep *= perSample;
-  }
-  for (let i = half; !isComplete && i <= length - half; i++) {
-    const nLeft = valid[i] - valid[i - half];
-    const nRight = valid[i + half] - valid[i];
-    if (nLeft < fewest || nRight < fewest || nLeft === 0 || nRight === 0) continue;
-    const left = (sums[i] - sums[i - half]) / nLeft;
-    const right = (sums[i + half] - sums[i]) / nRight;
-    const step = Math.abs(right - left);
-    if (step > meanStep) {
-      meanStep = step;
-      meanStepAt = i;
-    }
-    const varianceLeft = Math.max(0, (squares[i] - squares[i - half]) / nLeft - left * left);
-    const varianceRight = Math.max(0, (squares[i + half] - squares[i]) / nRight - right * right);
-    const change = Math.abs(varianceRight - varianceLeft);
-    if (change > varianceStep) {
-      varianceStep = change;
-      varianceStepAt = i;
     }
   }
   if (meanStepAt < 0) return nothing;

@@ -1,6 +1,7 @@
 import { isConstantSignal } from '../../numerics/moments';
 import { leastSquaresLine } from '../../numerics/regression';
 import type { Line } from '../../numerics/regression';
+import { seriesKernel } from '../../numerics/series-kernel';
 
 /** What several tests need to know of one whole record, found in two passes. */
 export interface RecordStatistics {
@@ -46,28 +47,10 @@ export function recordStatistics(values: Float64Array): RecordStatistics {
       kurtosis: NaN,
     };
   }
-  let min = Infinity;
-  let max = -Infinity;
-  let d2 = 0;
-  let r2 = 0;
-  let r3 = 0;
-  let r4 = 0;
-  let time = -centre;
-  for (let i = 0; i < values.length; i++) {
-    const value = values[i];
-    if (value < min) min = value;
-    if (value > max) max = value;
-    const d = value - mean;
-    // Residuals of a least-squares line have the mean 0.
-    const r = d - slope * time;
-    time += 1;
-    if (r !== r) continue;
-    const square = r * r;
-    d2 += d * d;
-    r2 += square;
-    r3 += square * r;
-    r4 += square * square;
-  }
+  // Residuals of a least-squares line have the mean 0.
+  const kernel = seriesKernel(values.length);
+  kernel.run.residualSums(kernel.pointerOf(values), values.length, mean, slope, -centre, kernel.out);
+  const [d2, r2, r3, r4, min, max] = kernel.results;
   const variance = d2 / n;
   const isConstant = isConstantSignal(variance, mean);
   const m2 = r2 / n;

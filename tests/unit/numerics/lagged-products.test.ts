@@ -1,11 +1,24 @@
 import { describe, expect, it } from 'vitest';
 import { createFft, nextSmoothLength } from '../../../processing/numerics/fft';
-import { laggedProducts } from '../../../processing/numerics/lagged-products';
+import { laggedProducts as productsOf } from '../../../processing/numerics/lagged-products';
 import { SplitMix64 } from '../../../processing/numerics/random';
 
 function noise(n: number, seed: number): Float64Array {
   const random = new SplitMix64(seed);
   return Float64Array.from({ length: n }, () => random.normal());
+}
+
+/** Products of series without gaps that keep their mean. */
+function laggedProducts(
+  series: readonly Float64Array[],
+  pairs: readonly (readonly [number, number])[],
+  maxLag: number,
+): Float64Array[] {
+  return productsOf(
+    series.map((values) => ({ values, mean: 0, mask: null })),
+    pairs,
+    maxLag,
+  );
 }
 
 /** The definition, product by product. */
@@ -86,6 +99,25 @@ describe('laggedProducts', () => {
       const [found] = laggedProducts([x, y], [[0, 1]], maxLag);
       expect(worst(found, throughOneTransform(x, y, maxLag))).toBeLessThan(1e-14);
     }
+  });
+
+  it('takes off means, and counts as nothing what is missing in a series or its mask', () => {
+    const gappy = (n: number, seed: number, every: number, offset: number): Float64Array =>
+      noise(n, seed).map((value, i) => (i % every === 2 ? Number.NaN : offset + value));
+    // An odd count, so that the last block ends on half a pair.
+    const [x, y] = [gappy(777, 11, 7, 300), gappy(777, 12, 5, -4)];
+    const [found] = productsOf(
+      [
+        { values: x, mean: 300.25, mask: y },
+        { values: y, mean: -4, mask: null },
+      ],
+      [[0, 1]],
+      60,
+    );
+    const dx = x.map((value, i) => (Number.isNaN(value) || Number.isNaN(y[i]) ? 0 : value - 300.25));
+    const dy = y.map((value) => (Number.isNaN(value) ? 0 : value + 4));
+    const expected = Float64Array.from({ length: 121 }, (_, at) => definition(dx, dy, at - 60));
+    expect(worst(found, expected)).toBeLessThan(1e-13);
   });
 
   it('is zero beyond the record', () => {
