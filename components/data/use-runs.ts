@@ -18,6 +18,12 @@ export function isUnderWay(run: Pick<Run, 'state'>): boolean {
   return run.state === 'waiting' || run.state === 'reading' || run.state === 'computing';
 }
 
+/** What to ask for to compute a run again: its span, or everything where that was asked. */
+export function againFrom(run: Run, id: string): StartRun {
+  const isAll = run.everything === true;
+  return { id, recipeHash: run.recipeHash, fromMs: isAll ? null : run.fromMs, toMs: isAll ? null : run.toMs };
+}
+
 export function useRuns(group: string, station: string) {
   return useQuery({
     queryKey: runKeys.all(group, station),

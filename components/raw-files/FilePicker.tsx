@@ -13,6 +13,7 @@ export function FilePicker({ onFiles, disabledReason }: FilePickerProps) {
   const { colour } = useTheme();
   const wide = useWide();
   const [isOver, setIsOver] = useState(false);
+  const [isFocused, setIsFocused] = useState(false);
   const helpId = useId();
   const isOff = disabledReason !== undefined;
 
@@ -42,6 +43,9 @@ export function FilePicker({ onFiles, disabledReason }: FilePickerProps) {
       ? colour.wash
       : `repeating-linear-gradient(transparent 0 21px, ${colour.hair} 21px 22px)`,
     cursor: isOff ? 'not-allowed' : 'pointer',
+    // the input itself is invisible, so its ring stands round the box
+    outline: isFocused ? `2px solid ${colour.beam}` : 'none',
+    outlineOffset: 2,
   };
   const paper: CSSProperties = { background: colour.panel, padding: '0 8px' };
   return (
@@ -80,6 +84,8 @@ export function FilePicker({ onFiles, disabledReason }: FilePickerProps) {
           width: '100%',
           height: '100%',
         }}
+        onFocus={(event) => setIsFocused(event.target.matches(':focus-visible'))}
+        onBlur={() => setIsFocused(false)}
         onChange={(event) => {
           take(event.target.files);
           event.target.value = '';

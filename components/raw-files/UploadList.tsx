@@ -74,7 +74,9 @@ export function UploadList({ queue, items, readingShares }: UploadListProps) {
           const share = readingShares[item.id];
           const said =
             item.state === 'sending'
-              ? `sending, ${formatBytes(item.file.size - item.sentBytes)} left`
+              ? item.sentBytes >= item.file.size
+                ? 'sent; the server is keeping it'
+                : `sending, ${formatBytes(item.file.size - item.sentBytes)} left`
               : share !== undefined
                 ? `kept; ${Math.round(share * 100)} % read`
                 : words;

@@ -85,12 +85,16 @@ export class UploadQueue {
 
   snapshot = (): readonly UploadItem[] => this.items;
 
+  /**
+   * @param computeWith hash of the recipe to compute with when all of these are read: it travels with the last of them, which is sent
+   * only when the others are done, so that one run is started and not one a file
+   */
   add(files: readonly { id: string; file: File }[], layoutId: string, computeWith: string | null): void {
-    const added = files.map(({ id, file }): UploadItem => ({
+    const added = files.map(({ id, file }, index): UploadItem => ({
       id,
       file,
       layoutId,
-      computeWith,
+      computeWith: index === files.length - 1 ? computeWith : null,
       state: 'waiting',
       sentBytes: 0,
       message: null,
@@ -156,6 +160,8 @@ export class UploadQueue {
     while (this.items.filter((item) => item.state === 'sending').length < atOnce) {
       const next = this.items.find((item) => item.state === 'waiting');
       if (!next) return;
+      const mustBeLast = next.computeWith !== null && this.items.some((item) => item.state === 'sending');
+      if (mustBeLast) return;
       this.start(next);
     }
   }

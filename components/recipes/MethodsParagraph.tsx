@@ -45,7 +45,7 @@ export function MethodsParagraph({ settings, former, onChange }: MethodsParagrap
             <Text style={{ lineHeight: onChange ? (wide ? 38 : 52) : 28, fontSize: 16 }}>
               {paragraph.parts.map((part, index) =>
                 typeof part === 'string' ? (
-                  part
+                  <UnitText key={index}>{part}</UnitText>
                 ) : onChange ? (
                   <ValueInput
                     key={`${part.path}-${index}`}
@@ -172,7 +172,7 @@ function ValueInput({
         }}
         style={{
           ...style,
-          width: `${Math.max(part.offWord ? 6 : 4, text.length + 2)}ch`,
+          width: `${Math.max(part.offWord ? 8 : 4, text.length + 2)}ch`,
           fontFamily: face.figure,
           fontVariantLigatures: 'none',
           textAlign: 'right',

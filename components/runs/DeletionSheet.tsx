@@ -41,7 +41,7 @@ export function DeletionSheet(props: DeletionSheetProps) {
       {account ? (
         <View style={{ gap: space.l }}>
           <View>
-            <Text variant="label">{`Goes with ${account.what}, for good`}</Text>
+            <Text variant="label">{`What goes, for good: ${account.what}`}</Text>
             {account.goes.map((line) => (
               <FactRow key={line.label} label={line.label}>
                 {`${formatCount(line.count)}${line.bytes === null ? '' : `, ${formatBytes(line.bytes)}`}`}

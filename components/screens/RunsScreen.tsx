@@ -5,6 +5,7 @@ import type { Run, StationSummary } from '../../server/contract/api';
 import { newId } from '../data/new-id';
 import { useMay } from '../data/use-me';
 import {
+  againFrom,
   isUnderWay,
   useCancelRun,
   useDeleteRun,
@@ -171,10 +172,7 @@ function RunItem({
   const { mark, words } = runState(run);
   const isStale = run.stale.length > 0 && !underWay;
   const recompute = (): void =>
-    start.mutate(
-      { id: againId, recipeHash: run.recipeHash, fromMs: run.fromMs, toMs: run.toMs },
-      { onSuccess: () => setAgainId(newId()) },
-    );
+    start.mutate(againFrom(run, againId), { onSuccess: () => setAgainId(newId()) });
   const took =
     run.finishedAtMs === null ? '' : `, took ${formatDuration(run.finishedAtMs - run.createdAtMs)}`;
 

@@ -8,7 +8,7 @@ import { zodResolver } from '@hookform/resolvers/zod';
 import type { Run, SetUpRevision, StationSummary } from '../../server/contract/api';
 import { newId } from '../data/new-id';
 import { useMay } from '../data/use-me';
-import { useRuns, useStartRun } from '../data/use-runs';
+import { againFrom, useRuns, useStartRun } from '../data/use-runs';
 import { useAddSetUp, useSetUps } from '../data/use-set-ups';
 import { useDeleteStation, useStationDeletion } from '../data/use-stations';
 import { useClock } from '../format/useClock';
@@ -415,13 +415,7 @@ function AfterCorrection({
       ) === index,
   );
   const recompute = async (list: readonly Run[]): Promise<void> => {
-    for (const run of list)
-      await start.mutateAsync({
-        id: newId(),
-        recipeHash: run.recipeHash,
-        fromMs: run.fromMs,
-        toMs: run.toMs,
-      });
+    for (const run of list) await start.mutateAsync(againFrom(run, newId()));
     router.push(stationPath(group, station, 'runs') as Href);
   };
   return (

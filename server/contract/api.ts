@@ -253,6 +253,8 @@ export const runSchema = z.object({
   recipeName: z.string(),
   fromMs: ms,
   toMs: ms,
+  /** Asked for all that was recorded: computed again, it takes in what came since. */
+  everything: z.boolean().optional(),
   state: z.enum(runStates),
   periodsTotal: z.number().int(),
   periodsDone: z.number().int(),

@@ -88,6 +88,7 @@ export function presentRun(row: RunRow, stationSlug: string, stale: string[]): R
     recipeName: row.recipeName,
     fromMs: row.fromMs,
     toMs: row.toMs,
+    everything: row.askedFromMs === null && row.askedToMs === null,
     state: row.state as Run['state'],
     periodsTotal: row.periodsTotal,
     periodsDone: row.periodsDone,

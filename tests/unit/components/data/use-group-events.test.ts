@@ -4,7 +4,7 @@ import type { RawFile, Run } from '../../../../server/contract/api';
 import { applyGroupEvent, keepEventStream, resync } from '../../../../components/data/use-group-events';
 import { rawFileKeys } from '../../../../components/data/use-raw-files';
 import { runResultKeys } from '../../../../components/data/use-run-results';
-import { runKeys } from '../../../../components/data/use-runs';
+import { againFrom, runKeys } from '../../../../components/data/use-runs';
 
 const group = 'lowmere';
 const station = 'hollin-fen';
@@ -189,5 +189,18 @@ describe('keepEventStream', () => {
     vi.advanceTimersByTime(60_000);
     expect(sources).toHaveLength(1);
     expect(sources[0]?.isClosed).toBe(true);
+  });
+});
+
+describe('againFrom', () => {
+  it('asks for everything where that was asked, else for the same span', () => {
+    const one = run({ recipeHash: 'h', fromMs: 10, toMs: 20 });
+    expect(againFrom(one, 'new')).toEqual({ id: 'new', recipeHash: 'h', fromMs: 10, toMs: 20 });
+    expect(againFrom({ ...one, everything: true }, 'new')).toEqual({
+      id: 'new',
+      recipeHash: 'h',
+      fromMs: null,
+      toMs: null,
+    });
   });
 });

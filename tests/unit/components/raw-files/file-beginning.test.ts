@@ -4,6 +4,8 @@ import { gzipSync } from 'node:zlib';
 import { describe, expect, it } from 'vitest';
 import { beginningBytes, hashOfFile, readBeginning } from '../../../../components/raw-files/file-beginning';
 
+const pack = (text: string): Uint8Array<ArrayBuffer> => new Uint8Array(gzipSync(text));
+
 const rows = Array.from(
   { length: 9000 },
   (_, i) => `${i},${(Math.sin(i) * 3).toFixed(3)},${(Math.cos(i * 1.7) * 2).toFixed(3)}`,
@@ -29,11 +31,11 @@ describe('readBeginning', () => {
   });
 
   it('unpacks gzip, told by its first bytes and not by a name', async () => {
-    const beginning = await readBeginning(new Blob([gzipSync(rows)]));
+    const beginning = await readBeginning(new Blob([pack(rows)]));
     expect(beginning).toMatchObject({ isPacked: true, isCutOff: true, problem: null });
     expect(rows.startsWith(beginning.text)).toBe(true);
     expect(beginning.text.length).toBeGreaterThanOrEqual(beginningBytes);
-    expect(await readBeginning(new Blob([gzipSync('a,b\n1,2\n')]))).toMatchObject({
+    expect(await readBeginning(new Blob([pack('a,b\n1,2\n')]))).toMatchObject({
       text: 'a,b\n1,2\n',
       isCutOff: false,
     });
@@ -44,7 +46,7 @@ describe('readBeginning', () => {
     const noise = randomBytes(600_000)
       .toString('base64')
       .replaceAll(/(.{60})/g, '$1\n');
-    const packed = gzipSync(noise);
+    const packed = pack(noise);
     expect(packed.length).toBeGreaterThan(300_000);
     const beginning = await readBeginning(new Blob([packed.subarray(0, 280_000)]));
     expect(beginning.problem).toBeNull();

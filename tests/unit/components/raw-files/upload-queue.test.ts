@@ -89,14 +89,12 @@ describe('UploadQueue', () => {
     const { transport, open, keep } = byHand();
     const queue = new UploadQueue(transport);
     queue.add([{ id: id(1), file: file('1.csv') }], 'layout', null);
-    open
-      .get(id(1))
-      ?.done(
-        413,
-        JSON.stringify({
-          error: { code: 'too_large', message: 'This file is larger than 4 GB.', requestId: 'q' },
-        }),
-      );
+    open.get(id(1))?.done(
+      413,
+      JSON.stringify({
+        error: { code: 'too_large', message: 'This file is larger than 4 GB.', requestId: 'q' },
+      }),
+    );
     expect(queue.snapshot()[0]).toMatchObject({
       state: 'failed',
       message: 'This file is larger than 4 GB.',
@@ -138,6 +136,21 @@ describe('UploadQueue', () => {
     expect(isBusy(queue.snapshot())).toBe(false);
     queue.clearFinished();
     expect(queue.snapshot()).toEqual([]);
+  });
+
+  it('asks for computing once, with the last file, when the others are done', () => {
+    const { transport, keep } = byHand();
+    const queue = new UploadQueue(transport);
+    queue.add(
+      [1, 2, 3].map((n) => ({ id: id(n), file: file(`${n}.csv`) })),
+      'layout',
+      hash,
+    );
+    expect(queue.snapshot().map((item) => item.computeWith)).toEqual([null, null, hash]);
+    keep(id(1));
+    expect(states(queue)).toEqual(['kept', 'sending', 'waiting']);
+    keep(id(2));
+    expect(states(queue)).toEqual(['kept', 'kept', 'sending']);
   });
 
   it('does not send what is here already', () => {
