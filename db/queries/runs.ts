@@ -221,6 +221,29 @@ export async function periodSummaries(
     .limit(limit);
 }
 
+/** Values, grades and reasons, for files that leave. */
+export async function periodsForExport(
+  db: Db,
+  runId: string,
+  fromMs: number,
+  toMs: number,
+  limit: number,
+): Promise<Pick<PeriodRowStored, 'startMs' | 'endMs' | 'outcome' | 'values' | 'grades' | 'reasons'>[]> {
+  return db
+    .select({
+      startMs: periods.startMs,
+      endMs: periods.endMs,
+      outcome: periods.outcome,
+      values: periods.values,
+      grades: periods.grades,
+      reasons: periods.reasons,
+    })
+    .from(periods)
+    .where(and(eq(periods.runId, runId), gte(periods.startMs, fromMs), lt(periods.startMs, toMs)))
+    .orderBy(asc(periods.startMs))
+    .limit(limit);
+}
+
 export async function periodAt(db: Db, runId: string, startMs: number): Promise<PeriodRowStored | null> {
   const rows = await db
     .select()

@@ -14,7 +14,7 @@ import {
   restoreRawFile,
   withdrawRawFile,
 } from '../services/raw-files';
-import { stationOf } from '../services/stations';
+import { stationOf } from '../services/station-of';
 import type { GroupContext } from './route';
 import { created, groupRoute, idParams, ok, parsePart, stationParams } from './route';
 

@@ -20,8 +20,8 @@ import {
   removeStation,
   saveLayout,
   stationDeletion,
-  stationOf,
 } from '../services/stations';
+import { stationOf } from '../services/station-of';
 import { created, empty, groupRoute, ok, stationParams } from './route';
 
 const confirmQuery = z.object({ confirm: z.string().max(100).default('') });

@@ -18,13 +18,14 @@ import { AppError, notFound } from '../errors';
 import { softwareVersion } from '../paths';
 import { presentRun } from '../presenters/present';
 import type { GroupContext } from '../routes/route';
+import { refuseUnconfirmed } from './confirmation';
 import { dropDerived } from './derived-files';
 import { recipeDocument } from './documents';
 import { recipeOf } from './recipes';
 import { lookAround } from './run-manifest';
 import { staleReasons } from './staleness';
 import type { SystemInputs } from './staleness';
-import { refuseUnconfirmed, stationOf } from './stations';
+import { stationOf } from './station-of';
 
 type Context = Pick<GroupContext, 'deps' | 'group' | 'person'>;
 

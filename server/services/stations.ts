@@ -21,18 +21,13 @@ import type { SetUp } from '../../processing/schemas/set-up';
 import type { AddSetUp, CreateStation, DeletionAccount } from '../contract/api';
 import { AppError, notFound } from '../errors';
 import type { GroupContext } from '../routes/route';
+import { refuseUnconfirmed } from './confirmation';
 import { stationDocument } from './documents';
 import { dropDerived } from './derived-files';
 import { staleRunIds } from './runs';
+import { stationOf } from './station-of';
 
 type Context = Pick<GroupContext, 'deps' | 'group' | 'person'>;
-
-/** @throws AppError not_found, also for a station of another group */
-export async function stationOf({ deps, group }: Context, slug: string): Promise<StationRow> {
-  const row = await stationBySlug(deps.db, group.id, slug);
-  if (row === null) throw notFound('station');
-  return row;
-}
 
 function conflict(userMessage: string, path?: string): AppError {
   return new AppError('conflict', {
@@ -142,15 +137,6 @@ export async function removeStation(context: Context, slug: string, confirm: str
     runs.map((run) => run.id),
   );
   deps.events.publish(group.id, { type: 'station', stationSlug: slug, change: 'deleted' });
-}
-
-/** A deletion names what it deletes, so that a slip of the finger deletes nothing. */
-export function refuseUnconfirmed(given: string, expected: string): void {
-  if (given === expected) return;
-  throw new AppError('invalid_input', {
-    userMessage: `Nothing was deleted. To delete, confirm with the word "${expected}".`,
-    fields: [{ path: 'confirm', message: `must be "${expected}"` }],
-  });
 }
 
 // ------------------------------------------------------------------------------------------------------------ set-ups
