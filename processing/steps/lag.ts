@@ -1,6 +1,6 @@
 import { seriesLabels } from '../catalogue';
 import { defaultValue } from '../defaults';
-import { laggedCovariances } from '../numerics/correlation';
+import { laggedCovariancesOfAll } from '../numerics/correlation';
 import type { LaggedCovariances } from '../numerics/correlation';
 import { covariance } from '../numerics/moments';
 import type { RecipeSettings } from '../schemas/recipe';
@@ -237,15 +237,19 @@ export function lagStep(state: PeriodState, settings: RecipeSettings['lag']): Pe
     state.values.lagSonicTemperature = 0;
   }
 
-  for (const gas of gasKeys) {
-    const series = state.series[gas];
-    if (!series) continue;
-    const reachS = Math.max(
-      noiseToS + Math.abs(window.expectedS),
-      window.halfWidthS + Math.abs(window.expectedS),
-    );
-    const maxLag = Math.max(1, Math.min(Math.floor(length / 2), Math.ceil(reachS * sampleRateHz) + 1));
-    const curve = laggedCovariances(wind, series, maxLag);
+  const gases = gasKeys.filter((gas) => state.series[gas]);
+  const reachS = Math.max(
+    noiseToS + Math.abs(window.expectedS),
+    window.halfWidthS + Math.abs(window.expectedS),
+  );
+  const maxLag = Math.max(1, Math.min(Math.floor(length / 2), Math.ceil(reachS * sampleRateHz) + 1));
+  const curves = laggedCovariancesOfAll(
+    wind,
+    gases.map((gas) => state.series[gas] as Float64Array),
+    maxLag,
+  );
+  gases.forEach((gas, index) => {
+    const curve = curves[index];
     const choice = chooseLag(curve, sampleRateHz, window, settings.noiseFactor, length);
     const at = choice.lagSamples + maxLag;
     const lag: LagState = {
@@ -271,7 +275,7 @@ export function lagStep(state: PeriodState, settings: RecipeSettings['lag']): Pe
       `${name} ${formatNumber(lagS, 2)} s (${choice.source === 'maximum' ? 'largest covariance' : 'expected lag'})`,
     );
     if (choice.fallback) addFallbackReason(state, gas, choice, lagS, settings.noiseFactor, sampleRateHz);
-  }
+  });
   return addLedger(state, {
     step: 'lag',
     version,

@@ -1,6 +1,6 @@
 import { sonicHumidityFactor } from '../constants';
 import { defaultValue } from '../defaults';
-import { median } from '../numerics/selection';
+import { medianAbsoluteDeviation } from '../numerics/selection';
 import type { RecipeSettings } from '../schemas/recipe';
 import type { Block, GasKey, PeriodState } from '../state';
 import {
@@ -87,16 +87,20 @@ export function profileStorage(levels: readonly ProfileLevel[], periodS: number)
  * @deviates none
  */
 export function robustMean(values: Float64Array, minimumCount: number): { mean: number; count: number } {
-  const valid = values.filter((value) => Number.isFinite(value));
-  if (valid.length === 0 || valid.length < minimumCount) return { mean: NaN, count: valid.length };
-  const middle = median(valid);
-  const deviation = median(valid.map((value) => Math.abs(value - middle)));
-  const limit = deviation > 0 ? (madThreshold * deviation) / madToSigma : Infinity;
+  const { n, median: middle, mad, farthest } = medianAbsoluteDeviation(values);
+  if (n > 0 && !Number.isFinite(farthest))
+    return robustMean(
+      values.filter((value) => Number.isFinite(value)),
+      minimumCount,
+    );
+  if (n === 0 || n < minimumCount) return { mean: NaN, count: n };
+  const limit = mad > 0 ? (madThreshold * mad) / madToSigma : Infinity;
   let sum = 0;
   let count = 0;
-  for (const value of valid) {
-    if (Math.abs(value - middle) > limit) continue;
-    sum += value - middle;
+  for (let i = 0; i < values.length; i++) {
+    const deviation = values[i] - middle;
+    if (!(Math.abs(deviation) <= limit)) continue;
+    sum += deviation;
     count++;
   }
   return { mean: middle + sum / count, count };

@@ -3,7 +3,7 @@ import { defaultValue } from '../../defaults';
 import { removeLine } from '../../numerics/regression';
 import { scratch } from '../../numerics/selection';
 import type { RecipeSettings } from '../../schemas/recipe';
-import type { Grade, PeriodState, Reason, SeriesKey, Step } from '../../state';
+import type { GasKey, Grade, PeriodState, Reason, SeriesKey, Step } from '../../state';
 import { gasKeys, seriesKeys } from '../../state';
 import {
   addLedger,
@@ -22,7 +22,8 @@ import type { AmplitudeFindings } from './amplitude';
 import { amplitudeTests } from './amplitude';
 import { angleOfAttack } from './angle-of-attack';
 import { discontinuities } from './discontinuities';
-import { lagTest } from './lag';
+import type { LagTest } from './lag';
+import { lagTests } from './lag';
 import type { RecordStatistics } from './record';
 import { recordStatistics } from './record';
 import { windNonstationarity } from './wind-nonstationarity';
@@ -170,9 +171,7 @@ export const screeningStep: Step<Settings> = (state, settings) => {
     noteSteps(state, note, settings, key, values, record);
   }
 
-  if (state.series.windW) {
-    for (const gas of gasKeys) noteLag(state, note, settings, gas, changes);
-  }
+  noteLags(state, note, settings, records, changes);
 
   const { windU, windV, windW } = state.series;
   if (windU && windV && windW) {
@@ -345,32 +344,43 @@ function noteSteps(
   );
 }
 
-function noteLag(
+function noteLags(
   state: PeriodState,
   note: Note,
   settings: Settings,
-  gas: 'co2' | 'h2o',
+  records: Partial<Record<SeriesKey, RecordStatistics>>,
   changes: Record<string, number | string | null>,
 ): void {
-  const scalar = state.series[gas];
-  const windW = state.series.windW;
-  if (!scalar || !windW) return;
-  const { sampleRateHz, length } = state.block;
-  const detrendedW = scratch(length, 4).subarray(0, length);
-  const detrendedScalar = scratch(length, 5).subarray(0, length);
-  removeLine(windW, detrendedW);
-  removeLine(scalar, detrendedScalar);
+  const { sampleRateHz } = state.block;
+  const detrended = (key: SeriesKey, slot: number): Float64Array | null => {
+    const values = state.series[key];
+    if (!values) return null;
+    const into = scratch(values.length, slot).subarray(0, values.length);
+    removeLine(values, into, records[key]?.line);
+    return into;
+  };
+  const windW = detrended('windW', 4);
+  if (!windW) return;
+  const gases = gasKeys.filter((gas) => state.series[gas]);
+  const scalars = gases.map((gas, index) => detrended(gas, 5 + index) as Float64Array);
   const noiseFactor =
     state.settings.lag.method === 'covariance-maximisation'
       ? state.settings.lag.noiseFactor
       : fallbackNoiseFactor;
-  const found = lagTest(
-    detrendedW,
-    detrendedScalar,
-    Math.round(settings.lag.windowS * sampleRateHz),
-    sampleRateHz,
-    noiseFactor,
-  );
+  const windowPoints = Math.round(settings.lag.windowS * sampleRateHz);
+  const found = lagTests(windW, scalars, windowPoints, sampleRateHz, noiseFactor);
+  gases.forEach((gas, index) => noteLag(state, note, settings, gas, found[index], changes));
+}
+
+function noteLag(
+  state: PeriodState,
+  note: Note,
+  settings: Settings,
+  gas: GasKey,
+  found: LagTest,
+  changes: Record<string, number | string | null>,
+): void {
+  const { sampleRateHz } = state.block;
   state.values[`screening.lag.${gas}`] = found.difference;
   const lagS = found.lagSamples / sampleRateHz;
   changes[`lagS.${gas}`] = lagS;

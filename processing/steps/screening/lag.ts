@@ -1,5 +1,6 @@
 import { defaultValue } from '../../defaults';
-import { laggedCovariances } from '../../numerics/correlation';
+import { laggedCovariancesOfAll } from '../../numerics/correlation';
+import type { LaggedCovariances } from '../../numerics/correlation';
 
 const noiseFromS = defaultValue('lag.noiseFromS');
 const noiseToS = defaultValue('lag.noiseToS');
@@ -38,13 +39,39 @@ export function lagTest(
   sampleRateHz: number,
   noiseFactor: number,
 ): LagTest {
+  return lagTests(windW, [scalar], windowPoints, sampleRateHz, noiseFactor)[0];
+}
+
+/** The same for several scalars, for little more than for one. */
+export function lagTests(
+  windW: Float64Array,
+  scalars: readonly Float64Array[],
+  windowPoints: number,
+  sampleRateHz: number,
+  noiseFactor: number,
+): LagTest[] {
   const farthest = Math.floor(noiseToS * sampleRateHz);
-  const nearest = Math.ceil(noiseFromS * sampleRateHz);
   const maxLag = Math.max(windowPoints, Math.min(farthest, Math.floor(windW.length / 2)));
   if (maxLag >= windW.length) {
-    return { difference: NaN, lagSamples: 0, covarianceAtZero: NaN, covarianceAtLag: NaN, noise: NaN };
+    return scalars.map(() => ({
+      difference: NaN,
+      lagSamples: 0,
+      covarianceAtZero: NaN,
+      covarianceAtLag: NaN,
+      noise: NaN,
+    }));
   }
-  const { covariances } = laggedCovariances(windW, scalar, maxLag);
+  return laggedCovariancesOfAll(windW, scalars, maxLag).map((curve) =>
+    judgeCurve(curve, windowPoints, Math.ceil(noiseFromS * sampleRateHz), noiseFactor),
+  );
+}
+
+function judgeCurve(
+  { covariances, maxLag }: LaggedCovariances,
+  windowPoints: number,
+  nearest: number,
+  noiseFactor: number,
+): LagTest {
   const covarianceAtZero = covariances[maxLag];
   let lagSamples = 0;
   let covarianceAtLag = covarianceAtZero;
@@ -59,7 +86,8 @@ export function lagTest(
   let sum = 0;
   let squares = 0;
   for (let lag = nearest; lag <= maxLag; lag++) {
-    for (const value of [covariances[maxLag + lag], covariances[maxLag - lag]]) {
+    for (let side = -1; side <= 1; side += 2) {
+      const value = covariances[maxLag + side * lag];
       if (value !== value) continue;
       n++;
       sum += value;
