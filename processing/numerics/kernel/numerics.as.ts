@@ -538,22 +538,14 @@ export function largestSteps(total: usize, squares: usize, n: i32, half: i32, ou
   store<f64>(out, <f64>((varianceAt - total) >> 3), 24);
 }
 
-let runBin: i32 = -1;
-let runLength: i32 = 0;
-let inCompany: i32 = 0;
-
+/** Counts a value in its bin, and its run among the longest of that bin. */
 // @ts-ignore: decorator
 @inline
-function goOn(bin: i32, counts: usize, longest: usize): void {
-  const isSame = bin === runBin;
-  const run = select<i32>(runLength + 1, 1, isSame);
+function countRun(bin: i32, run: i32, counts: usize, longest: usize): void {
   const at = bin << 2;
   store<i32>(counts + at, load<i32>(counts + at) + 1);
   const known = load<i32>(longest + at);
   store<i32>(longest + at, select<i32>(run, known, run > known));
-  inCompany += select<i32>(select<i32>(2, 1, run === 2), 0, isSame);
-  runBin = bin;
-  runLength = run;
 }
 
 /**
@@ -577,20 +569,31 @@ export function runsInBins(
   const step = f64x2.splat(width);
   const last = i32x4.splat(bins - 1);
   const zero = i32x4.splat(0);
-  runBin = -1;
-  runLength = 0;
-  inCompany = 0;
+  let previous: i32 = -1;
+  let run: i32 = 0;
+  // A run of two brings two values in company, each further one itself.
+  let inCompany: i32 = 0;
   const end = x + (n << 3);
   let at = x;
   for (; at + 16 <= end; at += 16) {
     const raw = i32x4.trunc_sat_f64x2_s_zero(f64x2.div(f64x2.sub(v128.load(at), begin), step));
     const bin = i32x4.max_s(i32x4.min_s(raw, last), zero);
-    goOn(i32x4.extract_lane(bin, 0), counts, longest);
-    goOn(i32x4.extract_lane(bin, 1), counts, longest);
+    const a = i32x4.extract_lane(bin, 0);
+    const b = i32x4.extract_lane(bin, 1);
+    const runA = select<i32>(run + 1, 1, a === previous);
+    const runB = select<i32>(runA + 1, 1, b === a);
+    countRun(a, runA, counts, longest);
+    countRun(b, runB, counts, longest);
+    inCompany += i32(runA > 1) + i32(runA === 2) + i32(runB > 1) + i32(runB === 2);
+    previous = b;
+    run = runB;
   }
   if (at < end) {
     const raw = i32x4.trunc_sat_f64x2_s_zero(f64x2.div(f64x2.sub(v128.load64_zero(at), begin), step));
-    goOn(i32x4.extract_lane(i32x4.max_s(i32x4.min_s(raw, last), zero), 0), counts, longest);
+    const bin = i32x4.extract_lane(i32x4.max_s(i32x4.min_s(raw, last), zero), 0);
+    run = select<i32>(run + 1, 1, bin === previous);
+    countRun(bin, run, counts, longest);
+    inCompany += i32(run > 1) + i32(run === 2);
   }
   return inCompany;
 }
