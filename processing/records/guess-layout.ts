@@ -1716,38 +1716,15 @@ export function guessLayout(input: GuessInput): LayoutGuess {
     estimatedRateHz = spacing.rateHz;
     const tidy = tidyRate(spacing.rateHz, input.sampleRateHz);
     if (spacing.isCoarse) {
-      const place = dateSourceOf({
-        profiles,
-        fileName: input.fileName,
-        nameDates,
-        headerDates,
-        rateHz: tidy,
-      });
-      if (place.source && place.date?.hasTime) {
-        layout.time = { kind: 'start-and-rate', start: place.source };
-        timeKnowledge = {
-          confidence: 'doubtful',
-          source: place.source.from,
-          how: `stamps are too coarse; start from the ${place.source.from === 'header' ? 'header' : 'file’s name'}, then the sampling rate`,
-        };
-        problems.push(
-          problem(
-            'stamps-coarse',
-            'time',
-            `Stamps are too coarse: about ${Math.round(spacing.rows / Math.max(1, spacing.rows - spacing.repeated))} rows share one. The start is taken from the ${place.source.from === 'header' ? 'header' : 'file’s name'}, then ${formatHz(tidy)}.`,
-          ),
-        );
-      } else {
-        timeKnowledge = { ...timeKnowledge, confidence: 'doubtful' };
-        problems.push(
-          problem(
-            'stamps-coarse',
-            'time',
-            'Stamps are too coarse: several rows share one, so that all but the first would count as duplicates. Put a start time into the file’s name and choose “start and rate”.',
-            'blocks',
-          ),
-        );
-      }
+      const share = Math.round(spacing.rows / Math.max(1, spacing.rows - spacing.repeated));
+      timeKnowledge = { ...timeKnowledge, confidence: 'likely' };
+      problems.push(
+        problem(
+          'stamps-coarse',
+          'time',
+          `Stamps are coarse: about ${share} rows share one. They are spread evenly between two stamps, at ${formatHz(tidy)}.`,
+        ),
+      );
     }
     if (!spacing.isEven) {
       problems.push(

@@ -3,6 +3,7 @@ import { guessLayout } from '../../../processing/records/guess-layout';
 import type { GuessInput, LayoutGuess, ProblemCode } from '../../../processing/records/guess-layout';
 import { layoutSchema } from '../../../processing/schemas/layout';
 import type { ChannelKey, Layout } from '../../../processing/schemas/layout';
+import { ingest, reportOf } from './record-fixtures';
 
 // All files are invented here, column by column, so what each of them holds is known beforehand.
 
@@ -708,30 +709,8 @@ describe('guessLayout on files that can be read in two ways', () => {
     ).toEqual(['windU', 'windV', 'windW']);
   });
 
-  it('takes start and rate when several rows share a stamp', () => {
+  it('counts the rate of stamps that several rows share, and says that they are spread', () => {
     const found = guess(
-      file(
-        ['time,u,v,w,ts'],
-        (i, s) => [`2027-06-22 ${clockOf(i, 20, morning, 0)}`, s.u, s.v, s.w, s.tC].join(','),
-        400,
-      ),
-      'HOF_20270622_1130.csv',
-      { sampleRateHz: 20 },
-    );
-    expect(found.preview.spacing).toBeNull();
-    expect(found.layout.time).toEqual({
-      kind: 'start-and-rate',
-      start: { from: 'file-name', pattern: 'YYYYMMDD_hhmm' },
-    });
-    expect(found.layout.sampleRateHz).toBe(20);
-    expect(found.problems.find((problem) => problem.code === 'stamps-coarse')).toMatchObject({
-      severity: 'confirm',
-    });
-    expect(found.problems.find((problem) => problem.code === 'stamps-coarse')?.message).toContain(
-      'about 20 rows share one',
-    );
-    // without a start in the name there is no safe way
-    const unsafe = guess(
       file(
         ['time,u,v,w,ts'],
         (i, s) => [`2027-06-22 ${clockOf(i, 20, morning, 0)}`, s.u, s.v, s.w, s.tC].join(','),
@@ -740,8 +719,12 @@ describe('guessLayout on files that can be read in two ways', () => {
       'a.csv',
       { sampleRateHz: 20 },
     );
-    expect(unsafe.problems.find((problem) => problem.code === 'stamps-coarse')).toMatchObject({
-      severity: 'blocks',
+    expect(found.layout.time).toEqual({ kind: 'stamp', column: 0, format: 'iso' });
+    expect(found.layout.sampleRateHz).toBe(20);
+    expect(found.problems.find((problem) => problem.code === 'stamps-coarse')).toMatchObject({
+      severity: 'confirm',
+      message:
+        'Stamps are coarse: about 20 rows share one. They are spread evenly between two stamps, at 20 Hz.',
     });
   });
 
@@ -903,5 +886,115 @@ describe('guessLayout on files that cannot be read safely', () => {
   it('never throws on bytes that are no text', () => {
     const bytes = Array.from({ length: 4000 }, (_, i) => String.fromCharCode((i * 7919) % 256)).join('');
     expect(() => guess(bytes, 'x.bin')).not.toThrow();
+  });
+});
+
+describe('the reader of whole files, given the guessed layout', () => {
+  const wind = (s: Scan): string[] => [s.u, s.v, s.w, s.tC];
+  const cases: { name: string; text: string; fileName: string; rateHz: number; firstMs: number }[] = [
+    {
+      name: 'ISO stamps with a zone',
+      text: file(['t,u,v,w,ts'], (i, s) =>
+        [`2027-06-22T${clockOf(i, 10, morning, 1)}+05:30`, ...wind(s)].join(','),
+      ),
+      fileName: 'a.csv',
+      rateHz: 10,
+      firstMs: Date.UTC(2027, 5, 22, 6, 0),
+    },
+    {
+      name: 'day and month with slashes',
+      text: file(['t;u;v;w;ts'], (i, s) =>
+        [`22/06/2027 ${clockOf(i, 10, morning, 1)}`, ...wind(s)].join(';'),
+      ),
+      fileName: 'a.csv',
+      rateHz: 10,
+      firstMs: Date.UTC(2027, 5, 22, 10, 30),
+    },
+    {
+      name: 'fourteen digits',
+      text: file(['t,u,v,w,ts'], (i, s) =>
+        [`20270622${clockOf(i, 10, morning, 1).replaceAll(':', '')}`, ...wind(s)].join(','),
+      ),
+      fileName: 'a.csv',
+      rateHz: 10,
+      firstMs: Date.UTC(2027, 5, 22, 10, 30),
+    },
+    {
+      name: 'date and time columns with decimal commas',
+      text: file(['date;time;u;v;w;ts'], (i, s) =>
+        ['22.06.2027', clockOf(i, 20, morning), ...wind(s)]
+          .join(';')
+          .replaceAll('.', ',')
+          .replace('22,06,2027', '22.06.2027'),
+      ),
+      fileName: 'a.csv',
+      rateHz: 20,
+      firstMs: Date.UTC(2027, 5, 22, 10, 30),
+    },
+    {
+      name: 'year, day of year, hhmm and seconds',
+      text: file(['year doy hhmm sec u v w ts'], (i, s) =>
+        ['2027', '173', '1130', (i / 10).toFixed(1), ...wind(s)].join(' '),
+      ),
+      fileName: 'a.dat',
+      rateHz: 10,
+      firstMs: Date.UTC(2027, 5, 22, 10, 30),
+    },
+    {
+      name: 'epoch seconds',
+      text: file(['unix_time\tu\tv\tw\tts'], (i, s) =>
+        [(1813663800 + i / 10).toFixed(1), ...wind(s)].join('\t'),
+      ),
+      fileName: 'a.tsv',
+      rateHz: 10,
+      firstMs: 1813663800000,
+    },
+    {
+      name: 'time of day with the date in the name',
+      text: file(['time,u,v,w,ts'], (i, s) => [clockOf(i, 10, morning, 1), ...wind(s)].join(',')),
+      fileName: 'HOF-2027-06-22_1130.csv',
+      rateHz: 10,
+      firstMs: Date.UTC(2027, 5, 22, 10, 30),
+    },
+    {
+      name: 'start in one of two dates of the header, then the rate',
+      text: file(['calibrated 2026-03-01', 'begin 2027-06-22 11:30', 'u,v,w,ts'], (_, s) =>
+        wind(s).join(','),
+      ),
+      fileName: 'a.csv',
+      rateHz: 10,
+      firstMs: Date.UTC(2027, 5, 22, 10, 30),
+    },
+    {
+      name: 'start in the name, in UTC',
+      text: file(['u,v,w,ts'], (_, s) => wind(s).join(',')),
+      fileName: 'hollin_20270622T113000Z.csv',
+      rateHz: 20,
+      firstMs: Date.UTC(2027, 5, 22, 11, 30),
+    },
+    {
+      name: 'whole seconds that twenty rows share',
+      text: file(
+        ['time,u,v,w,ts'],
+        (i, s) => [`2027-06-22 ${clockOf(i, 20, morning, 0)}`, ...wind(s)].join(','),
+        400,
+      ),
+      fileName: 'a.csv',
+      rateHz: 20,
+      firstMs: Date.UTC(2027, 5, 22, 10, 30),
+    },
+  ];
+
+  it.each(cases)('finds every row at its time: $name', ({ text, fileName, rateHz, firstMs }) => {
+    const found = guess(text, fileName, { sampleRateHz: rateHz });
+    const read = ingest(text, found.layout, { fileName, utcOffsetMinutes: 60 });
+    const report = reportOf(read);
+    const rows = text.split('\n').length - 1 - found.layout.headerRows;
+    expect(found.preview.firstMs).toBe(firstMs);
+    expect(report.firstScanMs).toBe(firstMs);
+    expect(report).toMatchObject({ rows, badRows: 0 });
+    expect(read.chunks.map(({ intake }) => intake.duplicates)).toEqual([0]);
+    // last stamp: (rows − 1) scans later, to the millisecond that the stamps are written with
+    expect(Math.abs(report.lastScanMs - (firstMs + ((rows - 1) * 1000) / rateHz))).toBeLessThan(1);
   });
 });
