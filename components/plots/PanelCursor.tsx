@@ -2,7 +2,7 @@ import { View } from 'react-native';
 import { quantity } from '../../processing/catalogue';
 import { GradeMark, Text } from '../primitives';
 import { useCursorMs } from './series-cursor';
-import { useTheme } from '../tokens';
+import { useTheme, webStyle } from '../tokens';
 import { gradeValue, periodIndexAt, readoutText } from './series-plot';
 import type { PlotSeries } from './series-plot';
 
@@ -22,6 +22,8 @@ export interface PanelCursorProps {
 /** Half of a grade mark: how far from the edge it stands for a value beyond the axis [px]. */
 const markInset = 5;
 
+const layer = webStyle({ willChange: 'transform', contain: 'layout style' });
+
 /** Beam line, ring on the value, readout in the headroom; the only part of a panel that moves with the cursor. */
 export function PanelCursor(props: PanelCursorProps) {
   const { colour } = useTheme();
@@ -37,14 +39,18 @@ export function PanelCursor(props: PanelCursorProps) {
   const isGraded = quantity(series.key).gradedBy !== null;
   return (
     <View
-      style={{
-        position: 'absolute',
-        left: 0,
-        top: 0,
-        width: left + plotWidth,
-        height: '100%',
-        pointerEvents: 'none',
-      }}
+      style={[
+        {
+          position: 'absolute',
+          left: 0,
+          top: 0,
+          width: left + plotWidth,
+          height: '100%',
+          pointerEvents: 'none',
+        },
+        // a layer of its own: moving the cursor repaints no canvas
+        layer,
+      ]}
     >
       <View
         style={{

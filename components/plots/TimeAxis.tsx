@@ -1,5 +1,4 @@
 import { memo } from 'react';
-import Svg, { G, Line, Text as SvgText } from 'react-native-svg';
 import { View } from 'react-native';
 import { formatDay, formatOffset, startOfDayMs } from '../format/times';
 import { Text } from '../primitives';
@@ -35,9 +34,9 @@ export const TimeAxis = memo(function TimeAxis(props: TimeAxisProps) {
   }
   return (
     <View aria-hidden style={{ width, height }}>
-      <Svg width={width} height={height} viewBox={`0 0 ${width} ${height}`}>
-        <Line x1={axisWidth} x2={width} y1={1} y2={1} stroke={colour.rule} strokeWidth={1} />
-        <SvgText
+      <svg width={width} height={height} viewBox={`0 0 ${width} ${height}`} style={{ display: 'block' }}>
+        <line x1={axisWidth} x2={width} y1={1} y2={1} stroke={colour.rule} strokeWidth={1} />
+        <text
           x={axisWidth - 6}
           y={37}
           textAnchor="end"
@@ -46,15 +45,15 @@ export const TimeAxis = memo(function TimeAxis(props: TimeAxisProps) {
           fontSize={11}
         >
           {formatOffset(offsetMinutes)}
-        </SvgText>
+        </text>
         {ticks.map((tick) => {
           const x = axisWidth + xOf(tick.atMs, scale);
           const isDayName = hasDays && tick.major;
           const anchor = x < axisWidth + 20 ? 'start' : x > width - 20 ? 'end' : 'middle';
           return (
-            <G key={tick.atMs}>
-              <Line x1={x} x2={x} y1={1} y2={tick.major ? 9 : 6} stroke={colour.rule} strokeWidth={1} />
-              <SvgText
+            <g key={tick.atMs}>
+              <line x1={x} x2={x} y1={1} y2={tick.major ? 9 : 6} stroke={colour.rule} strokeWidth={1} />
+              <text
                 x={anchor === 'start' ? Math.max(axisWidth, x) : x}
                 y={20}
                 fill={colour.inkSoft}
@@ -63,8 +62,8 @@ export const TimeAxis = memo(function TimeAxis(props: TimeAxisProps) {
                 fontSize={12}
               >
                 {isDayName ? '00:00' : tick.label}
-              </SvgText>
-            </G>
+              </text>
+            </g>
           );
         })}
         {days.map((start) => {
@@ -72,22 +71,15 @@ export const TimeAxis = memo(function TimeAxis(props: TimeAxisProps) {
           const right = Math.min(width, axisWidth + xOf(start + dayMs, scale));
           const text = dayName(start, offsetMinutes, right - x - 8);
           return text === '' ? null : (
-            <G key={start}>
-              <Line x1={x} x2={x} y1={1} y2={42} stroke={colour.rule} strokeWidth={1} />
-              <SvgText
-                x={x + 5}
-                y={38}
-                fill={colour.ink}
-                fontFamily={face.text}
-                fontSize={13}
-                fontWeight="600"
-              >
+            <g key={start}>
+              <line x1={x} x2={x} y1={1} y2={42} stroke={colour.rule} strokeWidth={1} />
+              <text x={x + 5} y={38} fill={colour.ink} fontFamily={face.text} fontSize={13} fontWeight="600">
                 {text}
-              </SvgText>
-            </G>
+              </text>
+            </g>
           );
         })}
-      </Svg>
+      </svg>
       <CursorTag {...props} plotWidth={plotWidth} />
     </View>
   );

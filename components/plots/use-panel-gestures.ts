@@ -19,10 +19,14 @@ interface Held {
   touchFrom: { x: number; isMoving: boolean } | null;
   /** The two instants that lie under the two fingers. */
   pinch: { instants: [number, number] } | null;
+  /** The last click or tap. */
+  pressed: { x: number; timeMs: number } | null;
 }
 
 /** Least length of a drag that means a span, not a click [px]. */
 const dragPx = 6;
+/** Longest time between the two presses of a double one [ms]. */
+const doubleMs = 400;
 
 /**
  * Pointer on a panel. Mouse: hover shows, click chooses, drag zooms into a span, double click opens. Touch: one finger moves the cursor
@@ -35,8 +39,15 @@ export function usePanelGestures(gestures: PanelGestures) {
   });
   const [span, setSpan] = useState<[number, number] | null>(null);
   const handlers = useMemo(() => {
-    const held: Held = { touches: new Map(), mouseFrom: null, dragged: null, touchFrom: null, pinch: null };
-    const xOf = (event: React.PointerEvent<HTMLElement> | React.MouseEvent<HTMLElement>) => {
+    const held: Held = {
+      touches: new Map(),
+      mouseFrom: null,
+      dragged: null,
+      touchFrom: null,
+      pinch: null,
+      pressed: null,
+    };
+    const xOf = (event: React.PointerEvent<HTMLElement>) => {
       const { left, right } = latest.current.bounds;
       const x = event.clientX - event.currentTarget.getBoundingClientRect().left;
       return Math.min(right, Math.max(left, x));
@@ -46,6 +57,14 @@ export function usePanelGestures(gestures: PanelGestures) {
       return (
         window.fromMs + ((x - bounds.left) / (bounds.right - bounds.left)) * (window.toMs - window.fromMs)
       );
+    };
+    /** A click or tap; the second one at the same place opens. (React Native Web hands no double click through.) */
+    const press = (x: number, timeMs: number) => {
+      const last = held.pressed;
+      const isSecond = last !== null && timeMs - last.timeMs < doubleMs && Math.abs(x - last.x) <= dragPx;
+      held.pressed = isSecond ? null : { x, timeMs };
+      latest.current.onChoose(instantAt(x));
+      if (isSecond) latest.current.onOpen(instantAt(x));
     };
     const stop = () => {
       held.mouseFrom = null;
@@ -102,11 +121,14 @@ export function usePanelGestures(gestures: PanelGestures) {
         const x = xOf(event);
         if (event.pointerType === 'mouse') {
           if (held.dragged) latest.current.onZoom(instantAt(held.dragged[0]), instantAt(held.dragged[1]));
-          else if (held.mouseFrom !== null) latest.current.onChoose(instantAt(x));
+          else if (held.mouseFrom !== null) press(x, event.timeStamp);
           stop();
           return;
         }
-        if (held.touchFrom && !held.pinch) latest.current.onChoose(instantAt(x));
+        if (held.touchFrom && !held.pinch) {
+          if (held.touchFrom.isMoving) latest.current.onChoose(instantAt(x));
+          else press(x, event.timeStamp);
+        }
         held.touches.delete(event.pointerId);
         if (held.touches.size === 0) stop();
       },
@@ -115,7 +137,6 @@ export function usePanelGestures(gestures: PanelGestures) {
       onPointerLeave: (event: React.PointerEvent<HTMLElement>) => {
         if (event.pointerType === 'mouse' && held.mouseFrom === null) latest.current.onHover(null);
       },
-      onDoubleClick: (event: React.MouseEvent<HTMLElement>) => latest.current.onOpen(instantAt(xOf(event))),
     };
   }, []);
   return { span, handlers };

@@ -136,7 +136,6 @@ export function PeriodScreen({ group, station, startMs, run: wantedRun }: Period
       <>
         <ErrorNotice
           error={error}
-          safe="Raw files and results are not touched by this."
           onRetry={() =>
             void Promise.all([stationQuery.refetch(), runsQuery.refetch(), periodQuery.refetch()])
           }

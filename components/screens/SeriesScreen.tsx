@@ -46,12 +46,13 @@ import { isFlagged, PeriodTable } from '../series/PeriodTable';
 import { useSettled } from '../series/use-settled';
 import { useWidth } from '../series/use-width';
 import { useWindowKeys, windowKeyWords } from '../series/use-window-keys';
+import { createTimeView, useTimeWindow } from '../series/time-view';
+import type { TimeView, TimeWindow } from '../series/time-view';
 import { rememberedView, rememberView } from '../series/view-memory';
 import { AppShell, periodPath, stationPath } from '../shell';
 import type { AppShellProps } from '../shell';
 import { clampWindow, gridInstants, zoomedWindow } from '../spine/spine-geometry';
 import { Spine } from '../spine/Spine';
-import type { TimeWindow } from '../spine/Spine';
 import { windowWords } from '../spine/window-words';
 import { space, useTheme, useWide, webStyle } from '../tokens';
 
@@ -107,7 +108,6 @@ export function SeriesScreen({ group, station, run: wantedRun }: SeriesScreenPro
       <PlainPage shell={shell} title="The series cannot be shown">
         <ErrorNotice
           error={error}
-          safe="Raw files and results are not touched by this."
           onRetry={() => void Promise.all([stationQuery.refetch(), runsQuery.refetch()])}
         />
       </PlainPage>
@@ -176,34 +176,31 @@ function RunSeries({ group, station, run, runs, summary, shell }: RunSeriesProps
     [run.fromMs, run.toMs],
   );
   const [remembered] = useState(() => rememberedView(run.id));
-  const [view, setView] = useState<TimeWindow>(
-    () =>
-      (remembered ? keptInView(remembered.window, remembered.chosenMs, bounds) : null) ??
-      clampWindow({ fromMs: Math.max(bounds.fromMs, bounds.toMs - 4 * dayMs), toMs: bounds.toMs }, bounds),
+  const [view] = useState(() =>
+    createTimeView(
+      remembered
+        ? keptInView(remembered.window, remembered.chosenMs, bounds)
+        : { fromMs: Math.max(bounds.fromMs, bounds.toMs - 4 * dayMs), toMs: bounds.toMs },
+    ),
   );
   const [cursor] = useState(() => createSeriesCursor(remembered?.chosenMs ?? null));
   const [isHelpOpen, setHelpOpen] = useState(false);
   const [isExportOpen, setExportOpen] = useState(false);
   const [isTruthShown, setTruthShown] = useState(false);
-  const [stripWidth, onStripLayout] = useWidth();
 
   const seriesQuery = useSeries(group, run.id, columnKeys, bounds);
-  const spineQuery = useSpine(group, station, run.id, Math.floor(stripWidth / 3));
   const data = seriesQuery.data ?? null;
   const starts = data?.startMs ?? noColumn;
   const ends = data?.endMs ?? noColumn;
-  const settledView = useSettled(view, 250);
 
-  // where a period was looked at last, this page begins the next time
+  // where this page was left, it begins the next time
   useEffect(
-    () => () => rememberView(run.id, { window: settledView, chosenMs: cursor.chosenMs() }),
-    [run.id, settledView, cursor],
+    () => () => rememberView(run.id, { window: view.get(), chosenMs: cursor.chosenMs() }),
+    [run.id, view, cursor],
   );
   useEffect(() => {
-    if (data) cursor.propose(tellingPeriod(data, view.fromMs, view.toMs));
-    // proposed once the columns are there, not with each move of the window
-    // eslint-disable-next-line react-hooks/exhaustive-deps
-  }, [data, cursor]);
+    if (data) cursor.propose(tellingPeriod(data, view.get().fromMs, view.get().toMs));
+  }, [data, cursor, view]);
   const hrefOf = useCallback(
     (startMs: number) => `${periodPath(group, station, startMs)}?run=${run.id}`,
     [group, station, run.id],
@@ -214,42 +211,43 @@ function RunSeries({ group, station, run, runs, summary, shell }: RunSeriesProps
       if (starts.length === 0) return;
       const shown = cursor.shownMs();
       const index = shown === null ? -1 : periodIndexAt(starts, ends, shown);
+      const window = view.get();
       const inView = Math.max(
         0,
-        starts.findIndex((start) => start >= view.fromMs),
+        starts.findIndex((start) => start >= window.fromMs),
       );
       const next = Math.max(0, Math.min(starts.length - 1, index < 0 ? inView : index + by));
       const start = starts[next] ?? 0;
       cursor.choose(start);
-      if (start < view.fromMs || (ends[next] ?? start) > view.toMs)
-        setView((before) => centredOn(before, start, bounds));
+      if (start < window.fromMs || (ends[next] ?? start) > window.toMs)
+        view.set(centredOn(window, start, bounds));
     },
     [starts, ends, cursor, view, bounds],
   );
   const zoom = useCallback(
     (factor: number) =>
-      setView((before) => {
+      view.change((before) => {
         const shown = cursor.shownMs();
         const isInside = shown !== null && shown >= before.fromMs && shown < before.toMs;
         const about = isInside ? shown : (before.fromMs + before.toMs) / 2;
         return zoomedWindow(before, factor, about, bounds, leastWindowMs);
       }),
-    [cursor, bounds],
+    [cursor, view, bounds],
   );
   const zoomInto = useCallback(
     (fromMs: number, toMs: number) =>
-      setView(clampWindow({ fromMs, toMs: Math.max(toMs, fromMs + leastWindowMs) }, bounds)),
-    [bounds],
+      view.set(clampWindow({ fromMs, toMs: Math.max(toMs, fromMs + leastWindowMs) }, bounds)),
+    [view, bounds],
   );
   const move = useCallback(
     (share: number) =>
-      setView((before) => {
+      view.change((before) => {
         const shift = share * (before.toMs - before.fromMs);
         return clampWindow({ fromMs: before.fromMs + shift, toMs: before.toMs + shift }, bounds);
       }),
-    [bounds],
+    [view, bounds],
   );
-  const reset = useCallback(() => setView({ ...bounds }), [bounds]);
+  const reset = useCallback(() => view.set({ ...bounds }), [view, bounds]);
   const openChosen = useCallback(() => {
     const shown = cursor.shownMs();
     if (shown !== null && periodIndexAt(starts, ends, shown) >= 0) open(shown);
@@ -261,27 +259,8 @@ function RunSeries({ group, station, run, runs, summary, shell }: RunSeriesProps
     ),
   );
 
-  const counts = useMemo(
-    () => (data ? gradeCounts(data, gradedFlux, settledView.fromMs, settledView.toMs) : null),
-    [data, settledView],
-  );
-  const words = windowWords(view.fromMs, view.toMs, clock.offsetMinutes);
-  const stripPadding = wide ? space.xl : space.l;
   const spine = (
-    <View style={{ paddingHorizontal: stripPadding, paddingVertical: wide ? 5 : 4 }}>
-      <View onLayout={onStripLayout}>
-        <Spine
-          data={spineQuery.data ?? null}
-          loading={spineQuery.isPending}
-          width={stripWidth}
-          height={wide ? 78 : 56}
-          offsetMinutes={clock.offsetMinutes}
-          window={view}
-          onWindow={setView}
-          named={wide}
-        />
-      </View>
-    </View>
+    <SpineStrip {...{ group, station, view }} runId={run.id} offsetMinutes={clock.offsetMinutes} />
   );
 
   const runChoice =
@@ -335,6 +314,8 @@ function RunSeries({ group, station, run, runs, summary, shell }: RunSeriesProps
             <View style={webStyle({ position: 'sticky', top: 16 })}>
               {data ? (
                 <PeriodInspector {...{ group, data, clock, hrefOf }} runId={run.id} onStep={step} />
+              ) : seriesQuery.error ? (
+                <Text soft>The periods show here once the series can be read.</Text>
               ) : (
                 <LoadingLine label="reading the periods" />
               )}
@@ -361,9 +342,7 @@ function RunSeries({ group, station, run, runs, summary, shell }: RunSeriesProps
                 rowGap: space.s,
               }}
             >
-              <Text variant="part" level={1}>
-                {words}
-              </Text>
+              <WindowTitle view={view} offsetMinutes={clock.offsetMinutes} />
               <View style={{ flexDirection: 'row', gap: space.xs }}>
                 <IconButton label="Earlier" icon={<Icon name="back" />} onPress={() => move(-0.5)} />
                 <IconButton label="Later" icon={<Icon name="forward" />} onPress={() => move(0.5)} />
@@ -372,56 +351,53 @@ function RunSeries({ group, station, run, runs, summary, shell }: RunSeriesProps
                 <IconButton label="Everything" icon={<Icon name="reset" />} onPress={reset} />
               </View>
               <View style={{ flexGrow: 1 }} />
-              {counts ? <GradeCounts flux={gradedFlux} counts={counts} /> : null}
+              {data ? <WindowCounts view={view} data={data} /> : null}
             </View>
           ) : (
-            <h1 className="gb-unseen">Series, {words}</h1>
+            <WindowTitle view={view} offsetMinutes={clock.offsetMinutes} />
           )}
           <RunState run={run} runsHref={stationPath(group, station, 'runs')} />
           {seriesQuery.error ? (
-            <ErrorNotice
-              error={seriesQuery.error}
-              safe={`Raw files and run ${run.number} are safe.`}
-              onRetry={() => void seriesQuery.refetch()}
-            />
+            <ErrorNotice error={seriesQuery.error} onRetry={() => void seriesQuery.refetch()} />
           ) : (
             <Panels
               {...{ data, view, clock, summary, isTruthShown, zoomInto, open, cursor }}
               isPending={isWorking}
             />
           )}
-          {!wide && counts ? <GradeCounts flux={gradedFlux} counts={counts} /> : null}
-          <Text variant="small" soft>
-            Band: random uncertainty, ± 1 standard deviation. Grey: night. Usable values carry{' '}
-            <GradeMark grade={1} size={12} show="none" />, rejected ones{' '}
-            <GradeMark grade={2} size={12} show="none" /> and are never joined.
-            {summary.station.invented ? ' Station and records are invented, to show how Gustbook works.' : ''}
-          </Text>
-          <View style={{ flexDirection: 'row', flexWrap: 'wrap', gap: space.m, alignItems: 'flex-end' }}>
-            {runChoice}
-            <ButtonRow>
-              {wide ? (
-                <Button
-                  label="Export"
-                  icon={<Icon name="export" size={18} />}
-                  onPress={() => setExportOpen(true)}
-                />
-              ) : null}
-              {data?.truth ? (
-                <Button
-                  label={isTruthShown ? 'Hide the known truth' : 'Show the known truth'}
-                  onPress={() => setTruthShown((shown) => !shown)}
-                />
-              ) : null}
-              {wide ? <Button kind="quiet" label="Keys" onPress={() => setHelpOpen(true)} /> : null}
-            </ButtonRow>
-          </View>
-          <WindowTable
-            {...{ group, clock, hrefOf, bounds }}
-            runId={run.id}
-            window={settledView}
-            count={countIn(data, settledView)}
-          />
+          {seriesQuery.error ? null : (
+            <>
+              {!wide && data ? <WindowCounts view={view} data={data} /> : null}
+              <Text variant="small" soft>
+                Band: random uncertainty, ± 1 standard deviation. Grey: night. Usable values carry{' '}
+                <GradeMark grade={1} size={12} show="none" />, rejected ones{' '}
+                <GradeMark grade={2} size={12} show="none" /> and are never joined.
+                {summary.station.invented
+                  ? ' Station and records are invented, to show how Gustbook works.'
+                  : ''}
+              </Text>
+              <View style={{ flexDirection: 'row', flexWrap: 'wrap', gap: space.m, alignItems: 'flex-end' }}>
+                {runChoice}
+                <ButtonRow>
+                  {wide ? (
+                    <Button
+                      label="Export"
+                      icon={<Icon name="export" size={18} />}
+                      onPress={() => setExportOpen(true)}
+                    />
+                  ) : null}
+                  {data?.truth ? (
+                    <Button
+                      label={isTruthShown ? 'Hide the known truth' : 'Show the known truth'}
+                      onPress={() => setTruthShown((shown) => !shown)}
+                    />
+                  ) : null}
+                  {wide ? <Button kind="quiet" label="Keys" onPress={() => setHelpOpen(true)} /> : null}
+                </ButtonRow>
+              </View>
+              <WindowTable {...{ group, clock, hrefOf, view, data }} runId={run.id} />
+            </>
+          )}
         </View>
         <Sheet open={isHelpOpen} onClose={() => setHelpOpen(false)} title="Keys and gestures" width={560}>
           <View style={{ gap: space.m }}>
@@ -435,24 +411,99 @@ function RunSeries({ group, station, run, runs, summary, shell }: RunSeriesProps
             ))}
           </View>
         </Sheet>
-        <ExportSheet
-          open={isExportOpen}
-          onClose={() => setExportOpen(false)}
-          group={group}
-          runId={run.id}
-          runNumber={run.number}
-          spans={[
-            { key: 'window', label: 'In view', words, ...view },
-            {
-              key: 'run',
-              label: 'Whole run',
-              words: windowWords(bounds.fromMs, bounds.toMs, clock.offsetMinutes),
-              ...bounds,
-            },
-          ]}
-        />
+        {isExportOpen ? (
+          <WindowExport {...{ group, run, view, bounds, clock }} onClose={() => setExportOpen(false)} />
+        ) : null}
       </AppShell>
     </SeriesCursorContext.Provider>
+  );
+}
+
+/** The time spine of the page's station and run. */
+function SpineStrip({
+  group,
+  station,
+  runId,
+  view,
+  offsetMinutes,
+}: {
+  group: string;
+  station: string;
+  runId: string;
+  view: TimeView;
+  offsetMinutes: number;
+}) {
+  const wide = useWide();
+  const window = useTimeWindow(view);
+  const [width, onLayout] = useWidth();
+  const query = useSpine(group, station, runId, Math.floor(width / 3));
+  return (
+    <View style={{ paddingHorizontal: wide ? space.xl : space.l, paddingVertical: wide ? 5 : 4 }}>
+      <View onLayout={onLayout}>
+        <Spine
+          data={query.data ?? null}
+          loading={query.isPending}
+          width={width}
+          height={wide ? 78 : 56}
+          offsetMinutes={offsetMinutes}
+          window={window}
+          onWindow={view.set}
+          named={wide}
+        />
+      </View>
+    </View>
+  );
+}
+
+/** The page's h1: which days are in view. A phone names the period under the cursor in its place and keeps this for the ear. */
+function WindowTitle({ view, offsetMinutes }: { view: TimeView; offsetMinutes: number }) {
+  const wide = useWide();
+  const { fromMs, toMs } = useTimeWindow(view);
+  const words = windowWords(fromMs, toMs, offsetMinutes);
+  return wide ? (
+    <Text variant="part" level={1}>
+      {words}
+    </Text>
+  ) : (
+    <h1 className="gb-unseen">Series, {words}</h1>
+  );
+}
+
+function WindowCounts({ view, data }: { view: TimeView; data: SeriesData }) {
+  const { fromMs, toMs } = useSettled(useTimeWindow(view), 120);
+  const counts = useMemo(() => gradeCounts(data, gradedFlux, fromMs, toMs), [data, fromMs, toMs]);
+  return <GradeCounts flux={gradedFlux} counts={counts} />;
+}
+
+function WindowExport({
+  group,
+  run,
+  view,
+  bounds,
+  clock,
+  onClose,
+}: {
+  group: string;
+  run: Run;
+  view: TimeView;
+  bounds: TimeWindow;
+  clock: ReturnType<typeof useClock>;
+  onClose: () => void;
+}) {
+  const window = useTimeWindow(view);
+  const words = ({ fromMs, toMs }: TimeWindow) => windowWords(fromMs, toMs, clock.offsetMinutes);
+  return (
+    <ExportSheet
+      open
+      onClose={onClose}
+      group={group}
+      runId={run.id}
+      runNumber={run.number}
+      spans={[
+        { key: 'window', label: 'In view', words: words(window), ...window },
+        { key: 'run', label: 'Whole run', words: words(bounds), ...bounds },
+      ]}
+    />
   );
 }
 
@@ -537,7 +588,7 @@ function RunState({ run, runsHref }: { run: Run; runsHref: string }) {
 
 interface PanelsProps {
   data: SeriesData | null;
-  view: TimeWindow;
+  view: TimeView;
   clock: ReturnType<typeof useClock>;
   summary: StationSummary;
   isTruthShown: boolean;
@@ -548,17 +599,9 @@ interface PanelsProps {
 }
 
 /** Fluxes over one time axis, wind and air over a second one, all under the same cursor. */
-function Panels({
-  data,
-  view,
-  clock,
-  summary,
-  isTruthShown,
-  isPending,
-  zoomInto,
-  open,
-  cursor,
-}: PanelsProps) {
+function Panels(props: PanelsProps) {
+  const { data, clock, summary, isTruthShown, isPending, zoomInto, open, cursor } = props;
+  const view = useTimeWindow(props.view);
   const wide = useWide();
   const { colour } = useTheme();
   const [width, onLayout] = useWidth();
@@ -724,21 +767,25 @@ function panelHeight(key: string, wide: boolean): number {
 interface WindowTableProps {
   group: string;
   runId: string;
-  window: TimeWindow;
-  /** Periods in the window, known from the columns. */
-  count: number;
+  view: TimeView;
+  data: SeriesData | null;
   clock: ReturnType<typeof useClock>;
   hrefOf: (startMs: number) => string;
 }
 
 /** The periods in view as a table, while they are few enough to read. */
-function WindowTable({ group, runId, window, count, clock, hrefOf }: WindowTableProps) {
+function WindowTable({ group, runId, view, data, clock, hrefOf }: WindowTableProps) {
+  const window = useSettled(useTimeWindow(view), 400);
+  const count = useMemo(() => countIn(data, window), [data, window]);
   const isReadable = count > 0 && count <= mostTableRows;
   const query = usePeriods(group, isReadable ? runId : null, window);
-  const [shown, setShown] = useState<'all' | 'flagged'>('all');
+  const [shown, setShown] = useState<'all' | 'flagged' | null>(null);
+  const wide = useWide();
   const all = query.data ?? [];
   const flagged = all.filter(isFlagged);
-  const rows = shown === 'all' ? all : flagged;
+  // a phone shows what needs a look first
+  const chosen = shown ?? (wide || flagged.length === 0 ? 'all' : 'flagged');
+  const rows = chosen === 'all' ? all : flagged;
   return (
     <Section
       title="Periods"
@@ -757,7 +804,7 @@ function WindowTable({ group, runId, window, count, clock, hrefOf }: WindowTable
           <SegmentChoice
             label="Rows"
             hideLabel
-            value={shown}
+            value={chosen}
             options={[
               { value: 'all', label: `All ${all.length}` },
               { value: 'flagged', label: `Not all good ${flagged.length}` },

@@ -1,4 +1,4 @@
-import { useMemo } from 'react';
+import { memo, useMemo } from 'react';
 import { View } from 'react-native';
 import { fluxLabels, quantity } from '../../processing/catalogue';
 import type { PeriodRow, SeriesData } from '../../server/contract/api';
@@ -25,7 +25,7 @@ export interface PeriodInspectorProps {
 }
 
 /** The period under the cursor: values with their grades, and why. Values come from the columns at once, reasons when it stands still. */
-export function PeriodInspector(props: PeriodInspectorProps) {
+export const PeriodInspector = memo(function PeriodInspector(props: PeriodInspectorProps) {
   const { data, clock } = props;
   const cursorMs = useCursorMs();
   const index = cursorMs === null ? -1 : periodIndexAt(data.startMs, data.endMs, cursorMs);
@@ -110,7 +110,7 @@ export function PeriodInspector(props: PeriodInspectorProps) {
       )}
     </View>
   );
-}
+});
 
 /** "Wind from 214° at 3.1 m s⁻¹ · z/L −0.18 · air 17.8 °C". */
 export function WeatherLine({ values }: Pick<PeriodRow, 'values'>) {

@@ -8,7 +8,8 @@ import { startOfDayMs } from '../format/times';
 import type { StationClock } from '../format/useClock';
 import { DataTable, GradeMark, Text, TextLink, UnitText } from '../primitives';
 import type { DataColumn } from '../primitives';
-import { fluxGrade, shownFluxes, verdictFlux } from './period-view';
+import { face } from '../tokens';
+import { fluxGrade, lowerFirst, shownFluxes, verdictFlux } from './period-view';
 
 export interface PeriodTableProps {
   periods: readonly PeriodRow[];
@@ -47,13 +48,17 @@ export function mainFindingWords(row: PeriodRow): string {
   const flux = verdictFlux(row);
   const main = row.mainFinding[flux];
   if (!main) return outcomeWords[row.outcome] ?? '';
-  return row.outcome === 'stopped' ? main : `${fluxLabels[flux].symbol}: ${main}`;
+  return row.outcome === 'stopped' ? main : `${fluxLabels[flux].symbol}: ${lowerFirst(main)}`;
 }
 
 function Head({ symbol, unit }: { symbol: string; unit: string }) {
   return (
     <>
-      <UnitText>{symbol}</UnitText>, <UnitText>{unit}</UnitText>
+      <UnitText>{symbol}</UnitText>
+      <br />
+      <span style={{ whiteSpace: 'nowrap', fontSize: 11, fontFamily: face.figure, fontWeight: 400 }}>
+        <UnitText>{unit}</UnitText>
+      </span>
     </>
   );
 }
@@ -97,7 +102,7 @@ export const PeriodTable = memo(function PeriodTable({ periods, clock, hrefOf }:
     ...shownFluxes.map((flux): DataColumn<PeriodRow> => ({
       key: flux,
       head: (
-        <span style={{ paddingRight: 28 }}>
+        <span style={{ display: 'inline-block', paddingRight: 36 }}>
           <Head symbol={fluxLabels[flux].symbol} unit={quantity(fluxLabels[flux].valueKey).unit} />
         </span>
       ),
@@ -116,7 +121,7 @@ export const PeriodTable = memo(function PeriodTable({ periods, clock, hrefOf }:
     },
     {
       key: 'direction',
-      head: 'from, °',
+      head: <Head symbol="from" unit="°" />,
       align: 'right',
       cell: (row) => (
         <Text variant="figure" size={14}>
@@ -127,7 +132,7 @@ export const PeriodTable = memo(function PeriodTable({ periods, clock, hrefOf }:
     {
       key: 'finding',
       head: 'What decided',
-      width: '30%',
+      width: '34%',
       cell: (row) => (
         <Text variant="small">
           <UnitText>{mainFindingWords(row)}</UnitText>
@@ -154,10 +159,10 @@ export const PeriodTable = memo(function PeriodTable({ periods, clock, hrefOf }:
               {clock.day(row.startMs)}
             </Text>
           </View>
-          <View style={{ flexDirection: 'row', flexWrap: 'wrap', columnGap: 18, rowGap: 4 }}>
+          <View style={{ flexDirection: 'row', flexWrap: 'wrap', rowGap: 4 }}>
             {shownFluxes.map((flux) => (
-              <View key={flux} style={{ flexDirection: 'row', gap: 6, alignItems: 'center' }}>
-                <Text variant="label">
+              <View key={flux} style={{ flexDirection: 'row', gap: 6, alignItems: 'center', width: '50%' }}>
+                <Text variant="label" style={{ width: 28 }}>
                   <UnitText>{fluxLabels[flux].symbol}</UnitText>
                 </Text>
                 <FluxCell row={row} flux={flux} />

@@ -115,7 +115,7 @@ function PassedTests({
       </View>
       {isOpen
         ? tests.map((test) => (
-            <FactRow key={test.key} label={test.label}>
+            <FactRow key={test.key} label={test.label.charAt(0).toUpperCase() + test.label.slice(1)}>
               <Text variant="figure" size={13}>
                 {formatQuantity(test.key, values[test.key])}
                 {unitOf(test.key) === '' ? '' : unitOf(test.key) === '°' ? '°' : ` ${unitOf(test.key)}`}
@@ -134,6 +134,8 @@ export function limitOf(
   const { limits, statistic } = reason;
   const some = Object.values(limits).filter((limit): limit is number => limit !== null);
   if (some.length === 0 || statistic.value === null) return undefined;
+  // nought against nought has no scale
+  if (statistic.value === 0 && some.every((limit) => limit === 0)) return undefined;
   return {
     label: statistic.label,
     value: statistic.value,

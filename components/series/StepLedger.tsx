@@ -105,8 +105,10 @@ function StepRow({
             flexWrap: wide ? 'wrap' : 'nowrap',
           }}
         >
-          <Counts counts={entry.counts ?? {}} />
-          <Facts title="Settings" rows={settings} />
+          <View style={{ gap: space.l }}>
+            <Counts counts={entry.counts ?? {}} />
+            <Facts title="Settings" rows={settings} />
+          </View>
           <Facts title="What it found" rows={found} />
           <Text variant="small" soft style={{ width: '100%' }}>
             Version {entry.version} of this step.

@@ -109,9 +109,12 @@ export function ledgerFact(
   reasons: readonly Pick<Reason, 'key' | 'finding'>[] = [],
 ): LedgerFact {
   const [head = key, subject = ''] = key.split('.');
-  const whole = isQuantity(key)
-    ? key
-    : (sameAs[key] ?? (covarianceKeys.has(head) || head === 'covUWRandom' ? null : undefined));
+  // the ledger counts spikes; the catalogue's quantity of the same key is their share
+  const isCount = head === 'spikes';
+  const whole =
+    isQuantity(key) && !isCount
+      ? key
+      : (sameAs[key] ?? (covarianceKeys.has(head) || head === 'covUWRandom' ? null : undefined));
   if (typeof whole === 'string' && typeof value === 'number') {
     const { label, unit, factor, offset, decimals } = quantity(whole);
     return {
@@ -212,5 +215,6 @@ export function figure(value: number): string {
 function plain(value: string | boolean | null): string {
   if (value === null) return 'none';
   if (typeof value === 'boolean') return value ? 'yes' : 'no';
+  if (value === 'median-mad') return 'median/MAD';
   return /^[a-z]+(-[a-z0-9]+)+$/.test(value) ? value.replaceAll('-', ' ') : value;
 }

@@ -11,14 +11,15 @@ export interface WindowKeys {
 
 /**
  * Keys of the series page: ← → period (Shift: ten), [ ] previous and next period, + − closer and wider, 0 everything, Enter opens the
- * period, ? shows the sheet. Keys pressed inside a field or on a control of its own are left alone.
+ * period, ? shows the sheet. Keys pressed inside a field are left alone, and so is what a control has used itself: arrows on the focused
+ * spine move the window.
  */
 export function useWindowKeys(keys: WindowKeys): void {
   useEffect(() => {
     const onKey = (event: KeyboardEvent) => {
       if (event.ctrlKey || event.metaKey || event.altKey || event.defaultPrevented) return;
       const target = event.target as HTMLElement | null;
-      if (target?.closest('input, textarea, select, dialog, [role="slider"]')) return;
+      if (target?.closest('input, textarea, select, dialog')) return;
       const onControl = target?.closest('a, button, [role="button"]') != null;
       const by = event.shiftKey ? 10 : 1;
       switch (event.key) {

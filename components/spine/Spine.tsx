@@ -10,6 +10,7 @@ import { Text } from '../primitives';
 import { face, useTheme, webStyle } from '../tokens';
 import { windowWords } from './window-words';
 import { clampWindow, instantOf, spineBars, timeTicks, xOf } from './spine-geometry';
+import type { SpineBar } from './spine-geometry';
 
 export interface TimeWindow {
   fromMs: number;
@@ -78,7 +79,11 @@ function Strip(props: SpineProps) {
   const upper = middle - top;
   const lower = bottom - middle;
   const comingId = `coming-${useId().replace(/[^a-zA-Z0-9]/g, '')}`;
-  const bars = useMemo(() => (data ? spineBars(data, width) : []), [data, width]);
+  const bars = useMemo(
+    () => barPaths(data ? spineBars(data, width) : [], middle, upper, lower),
+    [data, width, middle, upper, lower],
+  );
+  const spoken = useMemo(() => (data ? describeSpine(data, offsetMinutes) : ''), [data, offsetMinutes]);
   const drag = useRef<{ x: number; window: TimeWindow } | null>(null);
   const [dragging, setDragging] = useState(false);
 
@@ -116,7 +121,6 @@ function Strip(props: SpineProps) {
   const flagWidth = flag.length * 7 + 16;
   const flagX = Math.max(0, Math.min(width - flagWidth, windowX + windowWidth / 2 - flagWidth / 2));
 
-  const spoken = describeSpine(data, offsetMinutes);
   const interactive = props.onWindow !== undefined && window !== undefined;
 
   const handlers = interactive
@@ -171,7 +175,7 @@ function Strip(props: SpineProps) {
     <View
       style={[
         { height, width },
-        interactive && webStyle({ cursor: dragging ? 'grabbing' : 'grab', touchAction: 'none' }),
+        interactive && webStyle({ cursor: dragging ? 'grabbing' : 'grab', touchAction: 'none', userSelect: 'none' }),
       ]}
       {...(interactive
         ? {
@@ -241,31 +245,10 @@ function Strip(props: SpineProps) {
           strokeWidth={1}
           strokeDasharray="1.5 3"
         />
-        {bars.map((bar) => {
-          const good = lower * bar.good;
-          const usable = lower * bar.usable;
-          const rejected = lower * bar.rejected;
-          return (
-            <G key={bar.x}>
-              <Rect
-                x={bar.x}
-                y={middle - upper * bar.recorded}
-                width={bar.width}
-                height={upper * bar.recorded}
-                fill={colour.rule}
-              />
-              <Rect x={bar.x} y={middle} width={bar.width} height={good} fill={colour.good} />
-              <Rect x={bar.x} y={middle + good} width={bar.width} height={usable} fill={colour.usable} />
-              <Rect
-                x={bar.x}
-                y={middle + good + usable}
-                width={bar.width}
-                height={rejected}
-                fill={colour.rejected}
-              />
-            </G>
-          );
-        })}
+        <Path d={bars.recorded} fill={colour.rule} />
+        <Path d={bars.good} fill={colour.good} />
+        <Path d={bars.usable} fill={colour.usable} />
+        <Path d={bars.rejected} fill={colour.rejected} />
         {data.setUpChangesMs.map((at) => (
           <Line
             key={at}
@@ -323,6 +306,24 @@ function Strip(props: SpineProps) {
       </Svg>
     </View>
   );
+}
+
+/** All bars of a kind as one path: a strip of years is redrawn with each move of its window. */
+function barPaths(bars: readonly SpineBar[], middle: number, upper: number, lower: number) {
+  const paths = { recorded: '', good: '', usable: '', rejected: '' };
+  const put = (kind: keyof typeof paths, bar: SpineBar, top: number, height: number) => {
+    if (height > 0)
+      paths[kind] += `M${bar.x} ${top.toFixed(2)}h${bar.width}v${height.toFixed(2)}h${-bar.width}z`;
+  };
+  for (const bar of bars) {
+    const good = lower * bar.good;
+    const usable = lower * bar.usable;
+    put('recorded', bar, middle - upper * bar.recorded, upper * bar.recorded);
+    put('good', bar, middle, good);
+    put('usable', bar, middle + good, usable);
+    put('rejected', bar, middle + good + usable, lower * bar.rejected);
+  }
+  return paths;
 }
 
 function mean(values: readonly number[]): number {

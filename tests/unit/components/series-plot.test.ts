@@ -1,5 +1,13 @@
 import { describe, expect, it } from 'vitest';
-import { axisRange, gapsOf, periodIndexAt, plotSeries } from '../../../components/plots/series-plot';
+import {
+  axisRange,
+  describePanel,
+  gapsOf,
+  periodIndexAt,
+  plotSeries,
+  readoutText,
+  visibleRange,
+} from '../../../components/plots/series-plot';
 import type { SeriesData } from '../../../server/contract/api';
 
 const half = 1_800_000;
@@ -63,5 +71,64 @@ describe('the period under an instant', () => {
     expect(periodIndexAt(data.startMs, data.endMs, 2 * half)).toBe(-1);
     expect(periodIndexAt(data.startMs, data.endMs, 5 * half)).toBe(-1);
     expect(periodIndexAt([], [], 3)).toBe(-1);
+  });
+});
+
+describe('what is not there', () => {
+  const series = plotSeries(data, 'co2Flux');
+
+  it('is told apart: computed without a value, and not computed at all', () => {
+    expect(gapsOf(series, 0, 6 * half, 'without-value')).toEqual([{ fromMs: 3 * half, toMs: 4 * half }]);
+    expect(gapsOf(series, 0, 6 * half, 'absent')).toEqual([
+      { fromMs: 2 * half, toMs: 3 * half },
+      { fromMs: 5 * half, toMs: 6 * half },
+    ]);
+    expect(readoutText(series, 2)).toBe('not computed');
+    expect(readoutText(series, 3)).toBe('no data');
+  });
+
+  it('never reads as zero', () => {
+    expect(readoutText(series, 0)).toBe('−10.00 ± 1.00');
+    expect(readoutText(series, 4)).toBe('−4.00');
+    expect(describePanel(series, { fromMs: 2 * half, toMs: 4 * half })).toBe('FC: no data in this window');
+  });
+});
+
+describe('the entries in a window', () => {
+  it('are those that touch it', () => {
+    const series = plotSeries(data, 'co2Flux');
+    expect(visibleRange(series, half, 3 * half)).toEqual([1, 3]);
+    expect(visibleRange(series, half + 1, 3 * half + 1)).toEqual([1, 4]);
+    expect(visibleRange(series, 9 * half, 10 * half)).toEqual([5, 5]);
+  });
+});
+
+describe('wind direction', () => {
+  const winds: SeriesData = {
+    ...data,
+    quantities: { windDirection: [350, 358, 4, 12] },
+    grades: {},
+  };
+
+  it('is never joined by a line, because 358° and 4° are neighbours', () => {
+    const series = plotSeries(winds, 'windDirection');
+    expect(series.line.every((value) => value === null)).toBe(true);
+    expect(series.value.filter((value) => value !== null)).toEqual([350, 358, 4, 12]);
+  });
+
+  it('has the whole circle as its axis, with room for the readout above', () => {
+    const [low, high] = axisRange(plotSeries(winds, 'windDirection'), 0, 5 * half, 0.3);
+    expect(low).toBeLessThanOrEqual(0);
+    expect((high - 360) / (high - low)).toBeCloseTo(0.3, 9);
+  });
+});
+
+describe('room for the readout', () => {
+  it('is kept below for FC and above for the others', () => {
+    const series = plotSeries(data, 'co2Flux');
+    // values in view: −11 … 0 (zero is always in sight); 20 % of the axis below, 5 % above
+    const [low, high] = axisRange(series, 0, half, 0.2);
+    expect((-11 - low) / (high - low)).toBeCloseTo(0.2, 9);
+    expect(high / (high - low)).toBeCloseTo(0.05, 9);
   });
 });
