@@ -15,10 +15,13 @@ export const SPINE_FLUX = 'co2Flux';
 
 const CHUNK_MS = CHUNK_MINUTES * 60_000;
 
-interface HalfHour {
+/** What one raw file holds of a half hour. */
+export interface HalfHour {
   startMs: number;
-  /** Share of its scans that were recorded, 0–1. */
-  share: number;
+  /** Where in the half hour it lies and how many scans it holds there, as shares of the whole half hour, 0–1. */
+  from: number;
+  to: number;
+  recorded: number;
 }
 
 interface GradedPeriod {
@@ -52,7 +55,9 @@ export async function spineOf(
     const slots = slotsPerChunk(report.sampleRateHz);
     return report.chunks.map((chunk) => ({
       startMs: chunk.startMs,
-      share: Math.min(1, Math.max(0, chunk.rowsRead - chunk.duplicates) / slots),
+      from: chunk.firstSlot / slots,
+      to: (chunk.firstSlot + chunk.length) / slots,
+      recorded: Math.min(chunk.length, Math.max(0, chunk.rowsRead - chunk.duplicates)) / slots,
     }));
   });
   const { run } = request;
@@ -92,6 +97,27 @@ async function gradedPeriods(deps: Deps, run: RunRow, fromMs: number, toMs: numb
   }));
 }
 
+/**
+ * Share of each half hour that was recorded by any file. Where files overlap the stretch counts once; where a half hour is cut between
+ * two files both parts count.
+ */
+export function recordedShares(halfHours: readonly HalfHour[]): Map<number, number> {
+  const byStart = new Map<number, HalfHour[]>();
+  for (const half of halfHours) byStart.set(half.startMs, [...(byStart.get(half.startMs) ?? []), half]);
+  const shares = new Map<number, number>();
+  for (const [startMs, parts] of byStart) {
+    let share = 0;
+    let covered = 0;
+    for (const { from, to, recorded } of parts.sort((a, b) => a.from - b.from || b.to - a.to)) {
+      const fresh = Math.max(0, to - Math.max(from, covered));
+      if (to > from) share += (recorded * fresh) / (to - from);
+      covered = Math.max(covered, to);
+    }
+    shares.set(startMs, Math.min(1, share));
+  }
+  return shares;
+}
+
 /** Sums half hours and periods into bins by the share of each bin they fill. */
 export function binned(
   halfHours: HalfHour[],
@@ -109,11 +135,8 @@ export function binned(
       if (overlap > 0) column[bin] += (share * overlap) / binMs;
     }
   };
-  // Files may overlap: of several that hold a half hour, the fullest counts.
-  const fullest = new Map<number, number>();
-  for (const half of halfHours)
-    fullest.set(half.startMs, Math.max(half.share, fullest.get(half.startMs) ?? 0));
-  for (const [startMs, share] of fullest) spread(columns[3], startMs, startMs + CHUNK_MS, share);
+  for (const [startMs, share] of recordedShares(halfHours))
+    spread(columns[3], startMs, startMs + CHUNK_MS, share);
   for (const { startMs, endMs, grade } of graded)
     if (grade !== null) spread(columns[grade], startMs, endMs, 1);
   const list = (column: Float64Array) => Array.from(column, (share) => Math.min(1, share));
