@@ -134,7 +134,7 @@ function Counts({ counts }: { counts: NonNullable<Entry['counts']> }) {
         isUntouched
           ? [{ label: 'Each series', value: `${formatCount(first?.[1].after)}, none taken` }]
           : rows.map(([series, { before, after }]) => ({
-              label: seriesLabels[series as SeriesKey]?.label ?? series,
+              label: capitalised(seriesLabels[series as SeriesKey]?.label ?? series),
               value:
                 before === after ? formatCount(after) : `${formatCount(after)} of ${formatCount(before)}`,
             }))
@@ -166,3 +166,5 @@ function Facts({ title, rows }: { title: string; rows: { label: string; value: s
     </View>
   );
 }
+
+const capitalised = (text: string) => text.charAt(0).toUpperCase() + text.slice(1);

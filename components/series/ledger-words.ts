@@ -43,6 +43,11 @@ const names: Record<string, { label: string; unit?: string }> = {
   h2oMoleFractionHigh: { label: 'highest H2O mole fraction', unit: 'mmol mol-1' },
   h2oMeasure: { label: 'H2O recorded as' },
   co2Measure: { label: 'CO2 recorded as' },
+  goodPercent: { label: 'good up to', unit: '%' },
+  usablePercent: { label: 'usable up to', unit: '%' },
+  subIntervals: { label: 'short intervals' },
+  shortCovariance: { label: 'mean of the short covariances' },
+  wholeCovariance: { label: 'covariance of the whole period' },
   mad: { label: 'median absolute deviation' },
   ssitc: { label: 'steady state and turbulence alone' },
   class9: { label: 'class of nine' },
@@ -127,7 +132,7 @@ export function ledgerFact(
     const { unit, factor, decimals } = quantity(covariance);
     return {
       label: subjectLabel(
-        head === 'covUWRandom' ? 'sampling error of the covariance' : spaced(head),
+        head === 'covUWRandom' ? 'sampling error of the covariance' : nameOf(head).label,
         subject,
       ),
       value: withUnit(formatNumber(value * factor, decimals), unit),

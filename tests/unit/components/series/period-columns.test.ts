@@ -153,7 +153,7 @@ describe('a line of the step ledger', () => {
 
   it('reads covariances in the unit of their flux', () => {
     expect(ledgerFact('shortCovariance.co2Flux', -13.33e-6)).toEqual({
-      label: 'Short covariance, FC',
+      label: 'Mean of the short covariances, FC',
       value: '−13.33 µmol m-2 s-1',
     });
   });
