@@ -1,6 +1,6 @@
 import type { LaggedSeries } from './lagged-products';
 import { laggedProducts } from './lagged-products';
-import { countValid, deviationSum, mean, pairMoments } from './moments';
+import { countValid, mean, pairMoments } from './moments';
 
 /**
  * Covariances of two series at many lags, exact over the samples that are valid at each lag.
@@ -16,24 +16,49 @@ export interface LaggedCovariances {
 
 /** A series, its mean, and where it has gaps. */
 interface Centred extends LaggedSeries {
-  /** Sum of the values less their mean: zero but for rounding. */
-  total: number;
-  /** Positions of missing samples. */
-  missing: Int32Array;
+  /** Runs of missing samples: first of each, and first behind it. */
+  gaps: [number, number][];
 }
 
 function centre(values: Float64Array): Centred {
   const taken = mean(values);
-  const { n, sum } = deviationSum(values, taken);
-  const missing = new Int32Array(values.length - n);
-  for (let i = 0, m = 0; m < missing.length; i++) if (values[i] !== values[i]) missing[m++] = i;
-  return { values, mean: taken, mask: null, total: sum, missing };
+  const gaps: [number, number][] = [];
+  for (let i = 0, left = values.length - countValid(values); left > 0; i++) {
+    if (values[i] === values[i]) continue;
+    const from = i;
+    while (i < values.length && values[i] !== values[i]) i++;
+    gaps.push([from, i]);
+    left -= i - from;
+  }
+  return { values, mean: taken, mask: null, gaps };
 }
 
-/** Value less mean; 0 where missing. */
-function deviationAt({ values, mean: taken }: Centred, index: number): number {
-  const deviation = values[index] - taken;
-  return deviation === deviation ? deviation : 0;
+/** Running sums over the first i samples: of the values less their mean, and of how many of them are there. */
+interface RunningSums {
+  sum: Float64Array;
+  valid: Int32Array;
+}
+
+/** Without gaps only the ends of a series are asked for, out to the largest lag. */
+function runningSums({ values, mean: taken }: Centred, maxLag: number, isComplete: boolean): RunningSums {
+  const n = values.length;
+  const sum = new Float64Array(n + 1);
+  const valid = new Int32Array(n + 1);
+  for (let i = 0; i < n; i++) {
+    if (isComplete && i === maxLag && i < n - maxLag) {
+      // The series adds up to 0 but for rounding: from the end backwards it does so as well as from the beginning.
+      i = n - maxLag;
+      let rest = 0;
+      for (let j = i; j < n; j++) rest += values[j] - taken;
+      sum[i] = -rest;
+      valid[i] = i;
+    }
+    const deviation = values[i] - taken;
+    const isThere = deviation === deviation;
+    sum[i + 1] = isThere ? sum[i] + deviation : sum[i];
+    valid[i + 1] = isThere ? valid[i] + 1 : valid[i];
+  }
+  return { sum, valid };
 }
 
 /** What the valid pairs of every lag add up to, besides their products. */
@@ -43,7 +68,10 @@ interface PairSums {
   sumY: Float64Array;
 }
 
-/** Pair sums by running from lag to lag and taking off what meets a gap: exact, and cheap while gaps are few. */
+/**
+ * Pair sums lag by lag: what lies in range, less what meets a gap of the other series. Exact, and cheap while gaps are few; a long gap
+ * costs no more than a short one.
+ */
 function pairSumsByGaps(x: Centred, y: Centred, maxLag: number): PairSums {
   const n = x.values.length;
   const size = 2 * maxLag + 1;
@@ -52,57 +80,37 @@ function pairSumsByGaps(x: Centred, y: Centred, maxLag: number): PairSums {
     sumX: new Float64Array(size),
     sumY: new Float64Array(size),
   };
-  const isMissingX = new Uint8Array(n);
-  for (let m = 0; m < x.missing.length; m++) isMissingX[x.missing[m]] = 1;
-  const { total: totalX } = x;
-  const { total: totalY } = y;
-  for (const sign of [1, -1]) {
-    // Positive lags lose the end of x and the beginning of y, negative ones the other way round.
-    let offX = 0;
-    let offY = 0;
-    let offMissingX = 0;
-    for (let shift = 0; shift <= maxLag; shift++) {
-      if (shift > 0) {
-        const fromEnd = n - shift;
-        const fromStart = shift - 1;
-        if (fromEnd >= 0) {
-          const lostX = sign > 0 ? fromEnd : fromStart;
-          offX += deviationAt(x, lostX);
-          offY += deviationAt(y, sign > 0 ? fromStart : fromEnd);
-          offMissingX += isMissingX[lostX];
-        }
-      }
-      const lag = sign * shift;
-      const inRange = Math.max(0, n - shift);
-      let pairs = inRange - (x.missing.length - offMissingX);
-      let sumX = totalX - offX;
-      let sumY = totalY - offY;
-      if (inRange > 0) {
-        for (let m = 0; m < y.missing.length; m++) {
-          const i = y.missing[m] - lag;
-          if (i >= 0 && i < n) {
-            sumX -= deviationAt(x, i);
-            if (isMissingX[i] === 0) pairs--;
-          }
-        }
-        for (let m = 0; m < x.missing.length; m++) {
-          const j = x.missing[m] + lag;
-          if (j >= 0 && j < n) sumY -= deviationAt(y, j);
-        }
-      }
-      const at = lag + maxLag;
-      out.pairs[at] = Math.max(0, pairs);
-      out.sumX[at] = sumX;
-      out.sumY[at] = sumY;
+  const isComplete = x.gaps.length + y.gaps.length === 0;
+  const ofX = runningSums(x, maxLag, isComplete);
+  const ofY = runningSums(y, maxLag, isComplete);
+  const within = (i: number): number => (i < 0 ? 0 : i > n ? n : i);
+  for (let lag = -maxLag; lag <= maxLag; lag++) {
+    const firstX = within(-lag);
+    const endX = within(n - lag);
+    if (endX <= firstX) continue;
+    let pairs = ofX.valid[endX] - ofX.valid[firstX];
+    let sumX = ofX.sum[endX] - ofX.sum[firstX];
+    let sumY = ofY.sum[endX + lag] - ofY.sum[firstX + lag];
+    for (let g = 0; g < y.gaps.length; g++) {
+      const from = within(y.gaps[g][0] - lag);
+      const to = within(y.gaps[g][1] - lag);
+      sumX -= ofX.sum[to] - ofX.sum[from];
+      pairs -= ofX.valid[to] - ofX.valid[from];
     }
+    for (let g = 0; g < x.gaps.length; g++)
+      sumY -= ofY.sum[within(x.gaps[g][1] + lag)] - ofY.sum[within(x.gaps[g][0] + lag)];
+    const at = lag + maxLag;
+    out.pairs[at] = pairs;
+    out.sumX[at] = sumX;
+    out.sumY[at] = sumY;
   }
   return out;
 }
 
 /** 1 where a sample is there, 0 where it is missing. */
-function maskOf({ values, missing }: Centred): LaggedSeries {
+function maskOf({ values, gaps }: Centred): LaggedSeries {
   const isThere = new Float64Array(values.length).fill(1);
-  for (let m = 0; m < missing.length; m++) isThere[missing[m]] = 0;
+  for (const [from, to] of gaps) isThere.fill(0, from, to);
   return { values: isThere, mean: 0, mask: null };
 }
 
@@ -163,7 +171,7 @@ export function laggedCovariancesOfAll(
     const values = add(second);
     const at = pairs.length;
     pairs.push([0, values]);
-    const byMasks = (first.missing.length + second.missing.length) * lags > gapVisitsLimit;
+    const byMasks = (first.gaps.length + second.gaps.length) * lags > gapVisitsLimit;
     if (byMasks) {
       if (maskX < 0) maskX = add(maskOf(first));
       const maskY = add(maskOf(second));

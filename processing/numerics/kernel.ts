@@ -6,6 +6,10 @@ export interface NumericsKernel {
   lineSums(x: number, n: number, origin: number, start: number, out: number): void;
   residualSums(x: number, n: number, mean: number, slope: number, start: number, out: number): void;
   pairSums(x: number, y: number, n: number, nearX: number, nearY: number, out: number): void;
+  addScaled(x: number, n: number, mean: number, factor: number, isRequired: number, into: number): void;
+  leaveOutOutside(x: number, n: number, low: number, high: number, out: number): void;
+  vectorSums(u: number, v: number, w: number, n: number, out: number): void;
+  rotate(u: number, v: number, w: number, n: number, matrix: number): void;
   takeValid(x: number, n: number, into: number, out: number): number;
   deviations(x: number, n: number, middle: number): void;
   countInBins(x: number, n: number, min: number, scale: number, bins: number, counts: number): void;

@@ -167,16 +167,11 @@ function firstValid(values: Float64Array): number {
   return first < values.length ? values[first] : NaN;
 }
 
-/** Number of valid values and the sum of their differences from an origin; near the mean that sum is small and keeps its digits. */
-export function deviationSum(values: Float64Array, origin: number): { n: number; sum: number } {
-  const kernel = seriesKernel(values.length);
-  kernel.run.sums(kernel.pointerOf(values), values.length, origin, kernel.out);
-  return { n: kernel.results[0], sum: kernel.results[1] };
-}
-
 /** Number of values that are not NaN. */
 export function countValid(values: Float64Array): number {
-  return deviationSum(values, 0).n;
+  const kernel = seriesKernel(values.length);
+  kernel.run.sums(kernel.pointerOf(values), values.length, 0, kernel.out);
+  return kernel.results[0];
 }
 
 /** What two parts of a record add up to: number, means, sums of squared and crossed deviations. */

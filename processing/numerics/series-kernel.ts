@@ -22,10 +22,12 @@ export interface SeriesKernel {
   /**
    * Where the kernel finds a series.
    *
-   * @param x resident, or copied to one of two places
-   * @param place 0 or 1: two series that are needed together take different ones
+   * @param x resident, or copied to one of three places
+   * @param place series that are needed together take different ones
    */
-  pointerOf(x: Float64Array, place?: 0 | 1): number;
+  pointerOf(x: Float64Array, place?: 0 | 1 | 2): number;
+  /** Brings back what the kernel made of a series that `pointerOf` had copied; nothing to do for resident ones. */
+  bringBack(x: Float64Array, place?: 0 | 1 | 2): void;
   /** What stands at a pointer. */
   valuesAt(pointer: number, length: number): Float64Array;
 }
@@ -36,7 +38,7 @@ const resultCount = 16;
 /** 32-bit counts; twice the most bins anything asks for. */
 const countRoom = 8192;
 const workArrays = 3;
-const copyPlaces = 2;
+const copyPlaces = 3;
 const smallestCapacity = 4096;
 /** Series a period can have. */
 const mostResidents = 6;
@@ -75,11 +77,15 @@ class Memory implements SeriesKernel {
     }
   }
 
-  pointerOf(x: Float64Array, place: 0 | 1 = 0): number {
+  pointerOf(x: Float64Array, place: 0 | 1 | 2 = 0): number {
     if (x.buffer === this.buffer) return x.byteOffset;
     const { pointer, values } = this.copies[place];
     values.set(x);
     return pointer;
+  }
+
+  bringBack(x: Float64Array, place: 0 | 1 | 2 = 0): void {
+    if (x.buffer !== this.buffer) x.set(this.copies[place].values.subarray(0, x.length));
   }
 
   valuesAt(pointer: number, length: number): Float64Array {

@@ -2,6 +2,7 @@ import { seriesLabels } from '../catalogue';
 import { celsiusZeroK, gasConstant } from '../constants';
 import { defaultValue } from '../defaults';
 import { median } from '../numerics/selection';
+import { seriesKernel } from '../numerics/series-kernel';
 import type { RecipeSettings } from '../schemas/recipe';
 import type { Block, GasKey, PeriodState, SeriesKey, Step } from '../state';
 import { seriesKeys } from '../state';
@@ -48,18 +49,10 @@ export interface Limits {
 export function leaveOutOutside(values: Float64Array, limits: Limits): { low: number; high: number } {
   const bottom = limits.low - Math.abs(limits.low) * storageRounding;
   const top = limits.high + Math.abs(limits.high) * storageRounding;
-  let low = 0;
-  let high = 0;
-  for (let i = 0; i < values.length; i++) {
-    const value = values[i];
-    if (value < bottom) {
-      values[i] = NaN;
-      low++;
-    } else if (value > top) {
-      values[i] = NaN;
-      high++;
-    }
-  }
+  const kernel = seriesKernel(values.length);
+  kernel.run.leaveOutOutside(kernel.pointerOf(values), values.length, bottom, top, kernel.out);
+  const [low, high] = kernel.results;
+  if (low + high > 0) kernel.bringBack(values);
   return { low, high };
 }
 

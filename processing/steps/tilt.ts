@@ -1,3 +1,5 @@
+import { countValid } from '../numerics/moments';
+import { seriesKernel } from '../numerics/series-kernel';
 import type { RecipeSettings } from '../schemas/recipe';
 import type { PeriodState, TiltState } from '../state';
 import { everyFlux, addLedger, addReason, addSkipped, formatNumber } from './ledger';
@@ -26,18 +28,15 @@ export interface MeanWind {
  * @deviates none
  */
 export function meanWind(u: Float64Array, v: Float64Array, w: Float64Array): MeanWind {
-  let samples = 0;
-  let sumU = 0;
-  let sumV = 0;
-  let sumW = 0;
-  for (let i = 0; i < u.length; i++) {
-    const total = u[i] + v[i] + w[i];
-    if (total !== total) continue;
-    sumU += u[i];
-    sumV += v[i];
-    sumW += w[i];
-    samples++;
-  }
+  const kernel = seriesKernel(u.length);
+  kernel.run.vectorSums(
+    kernel.pointerOf(u, 0),
+    kernel.pointerOf(v, 1),
+    kernel.pointerOf(w, 2),
+    u.length,
+    kernel.out,
+  );
+  const [samples, sumU, sumV, sumW] = kernel.results;
   if (samples === 0) return { u: Number.NaN, v: Number.NaN, w: Number.NaN, samples };
   return { u: sumU / samples, v: sumV / samples, w: sumW / samples, samples };
 }
@@ -97,31 +96,14 @@ export function rotateInPlace(
   w: Float64Array,
   matrix: RotationMatrix,
 ): number {
-  const [a, b, c, d, e, f, g, h, k] = matrix;
-  let valid = 0;
-  for (let i = 0; i < u.length; i++) {
-    const x = u[i];
-    const y = v[i];
-    const z = w[i];
-    const total = x + y + z;
-    if (total !== total) {
-      u[i] = Number.NaN;
-      v[i] = Number.NaN;
-      w[i] = Number.NaN;
-      continue;
-    }
-    u[i] = a * x + b * y + c * z;
-    v[i] = d * x + e * y + f * z;
-    w[i] = g * x + h * y + k * z;
-    valid++;
-  }
-  return valid;
-}
-
-function countValid(series: Float64Array): number {
-  let valid = 0;
-  for (let i = 0; i < series.length; i++) if (series[i] === series[i]) valid++;
-  return valid;
+  const kernel = seriesKernel(u.length);
+  const places = [kernel.pointerOf(u, 0), kernel.pointerOf(v, 1), kernel.pointerOf(w, 2)] as const;
+  kernel.results.set(matrix);
+  kernel.run.rotate(...places, u.length, kernel.out);
+  kernel.bringBack(u, 0);
+  kernel.bringBack(v, 1);
+  kernel.bringBack(w, 2);
+  return countValid(w);
 }
 
 /**

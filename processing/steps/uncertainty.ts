@@ -1,6 +1,7 @@
 import { molarMassWater } from '../constants';
 import { biasedCovariances } from '../numerics/correlation';
 import type { BiasedCovariances } from '../numerics/correlation';
+import { seriesKernel } from '../numerics/series-kernel';
 import type { RecipeSettings } from '../schemas/recipe';
 import type { AirState, GasKey, PeriodState, ScalarKey } from '../state';
 import { latentHeatOfVaporisation, specificHeat } from '../thermodynamics';
@@ -108,7 +109,9 @@ export interface CombinedPart {
  * @returns n samples, NaN where a required part is missing
  */
 export function combineScalars(length: number, parts: readonly CombinedPart[]): Float64Array {
-  const out = new Float64Array(length);
+  const kernel = seriesKernel(length);
+  const [into] = kernel.work;
+  const out = kernel.workValues[0].subarray(0, length).fill(0);
   for (const { values, mean, lagSamples, factor, isRequired } of parts) {
     if (factor === 0) continue;
     const first = Math.max(0, -lagSamples);
@@ -116,15 +119,20 @@ export function combineScalars(length: number, parts: readonly CombinedPart[]): 
     if (isRequired) {
       out.fill(Number.NaN, 0, Math.min(first, length));
       out.fill(Number.NaN, Math.max(0, end), length);
-      for (let i = first; i < end; i++) out[i] += factor * (values[i + lagSamples] - mean);
-    } else {
-      for (let i = first; i < end; i++) {
-        const value = values[i + lagSamples];
-        if (value === value) out[i] += factor * (value - mean);
-      }
     }
+    if (first >= end) continue;
+    const overlap = values.subarray(first + lagSamples, end + lagSamples);
+    const from = kernel.pointerOf(overlap);
+    kernel.run.addScaled(
+      from,
+      end - first,
+      mean,
+      factor,
+      isRequired ? 1 : 0,
+      into + first * out.BYTES_PER_ELEMENT,
+    );
   }
-  return out;
+  return out.slice();
 }
 
 /** Scalars without which a flux's combined series has no value; the small humidity part of H may be missing. */

@@ -345,6 +345,108 @@ export function pairSums(x: usize, y: usize, n: i32, nearX: f64, nearY: f64, out
   store<f64>(out, lanesAdded(sxy), 40);
 }
 
+/** into += factor (x − mean); a missing x makes the result missing if it is required, else it changes nothing. */
+export function addScaled(x: usize, n: i32, mean: f64, factor: f64, isRequired: bool, into: usize): void {
+  const o = f64x2.splat(mean);
+  const f = f64x2.splat(factor);
+  let i = 0;
+  for (; i + 2 <= n; i += 2) {
+    const at = <usize>i << 3;
+    let d = f64x2.mul(f64x2.sub(v128.load(x + at), o), f);
+    if (!isRequired) d = v128.and(d, f64x2.eq(d, d));
+    v128.store(into + at, f64x2.add(v128.load(into + at), d));
+  }
+  if (i < n) {
+    const at = <usize>i << 3;
+    const d = (load<f64>(x + at) - mean) * factor;
+    if (isRequired || d === d) store<f64>(into + at, load<f64>(into + at) + d);
+  }
+}
+
+// ------------------------------------------------------------------------------------------------------------ in place
+
+/** Makes values outside of [low, high] missing; out: how many were below, how many above. */
+export function leaveOutOutside(x: usize, n: i32, low: f64, high: f64, out: usize): void {
+  const end = x + (n << 3);
+  const bottom = f64x2.splat(low);
+  const top = f64x2.splat(high);
+  let below: i64 = 0;
+  let above: i64 = 0;
+  for (let at = x; at < end; at += 16) {
+    const v = loadUpTo(at, end);
+    if (!v128.any_true(v128.or(f64x2.lt(v, bottom), f64x2.gt(v, top)))) continue;
+    for (let one = at; one < at + 16 && one < end; one += 8) {
+      const value = load<f64>(one);
+      if (value < low) {
+        below++;
+        store<f64>(one, NaN);
+      } else if (value > high) {
+        above++;
+        store<f64>(one, NaN);
+      }
+    }
+  }
+  store<f64>(out, <f64>below);
+  store<f64>(out, <f64>above, 8);
+}
+
+/** out: samples that have all three components, their sums. */
+export function vectorSums(u: usize, v: usize, w: usize, n: i32, out: usize): void {
+  const end = u + (n << 3);
+  let count = i64x2.splat(0);
+  let sumU = f64x2.splat(0);
+  let sumV = f64x2.splat(0);
+  let sumW = f64x2.splat(0);
+  let atV = v;
+  let atW = w;
+  for (let at = u; at < end; at += 16) {
+    const isOdd = at + 8 === end;
+    const x = loadUpTo(at, end);
+    const y = isOdd ? v128.load64_zero(atV) : v128.load(atV);
+    const z = isOdd ? v128.load64_zero(atW) : v128.load(atW);
+    const total = f64x2.add(f64x2.add(x, y), z);
+    const m = f64x2.eq(total, total);
+    count = i64x2.sub(count, m);
+    sumU = f64x2.add(sumU, v128.and(x, m));
+    sumV = f64x2.add(sumV, v128.and(y, m));
+    sumW = f64x2.add(sumW, v128.and(z, m));
+    atV += 16;
+    atW += 16;
+  }
+  store<f64>(out, <f64>(i64x2.extract_lane(count, 0) + i64x2.extract_lane(count, 1)));
+  store<f64>(out, lanesAdded(sumU), 8);
+  store<f64>(out, lanesAdded(sumV), 16);
+  store<f64>(out, lanesAdded(sumW), 24);
+}
+
+/** Rotates three components in place by the nine numbers at `matrix`; a sample without one of them loses all. */
+export function rotate(u: usize, v: usize, w: usize, n: i32, matrix: usize): void {
+  const a = v128.load64_splat(matrix);
+  const b = v128.load64_splat(matrix, 8);
+  const c = v128.load64_splat(matrix, 16);
+  const d = v128.load64_splat(matrix, 24);
+  const e = v128.load64_splat(matrix, 32);
+  const f = v128.load64_splat(matrix, 40);
+  const g = v128.load64_splat(matrix, 48);
+  const h = v128.load64_splat(matrix, 56);
+  const k = v128.load64_splat(matrix, 64);
+  const none = f64x2.splat(NaN);
+  // At an odd count the value behind the last is turned too; it belongs to nobody.
+  for (let i: usize = 0; i < <usize>n << 3; i += 16) {
+    const x = v128.load(u + i);
+    const y = v128.load(v + i);
+    const z = v128.load(w + i);
+    const total = f64x2.add(f64x2.add(x, y), z);
+    const m = f64x2.eq(total, total);
+    const p = f64x2.add(f64x2.add(f64x2.mul(a, x), f64x2.mul(b, y)), f64x2.mul(c, z));
+    const q = f64x2.add(f64x2.add(f64x2.mul(d, x), f64x2.mul(e, y)), f64x2.mul(f, z));
+    const r = f64x2.add(f64x2.add(f64x2.mul(g, x), f64x2.mul(h, y)), f64x2.mul(k, z));
+    v128.store(u + i, v128.bitselect(p, none, m));
+    v128.store(v + i, v128.bitselect(q, none, m));
+    v128.store(w + i, v128.bitselect(r, none, m));
+  }
+}
+
 // ------------------------------------------------------------------------------------------------------------ order
 
 /** Copies the valid values to `into`; out: min, max. Returns how many there are. */
