@@ -1,5 +1,6 @@
+import { randomUUID } from 'node:crypto';
 import { createReadStream } from 'node:fs';
-import { mkdir, readFile, rename, rm, writeFile } from 'node:fs/promises';
+import { mkdir, readdir, readFile, rename, rm, writeFile } from 'node:fs/promises';
 import { join } from 'node:path';
 import { addGroup, anyUserExists, userByEmail } from '../../db/queries/groups';
 import { upsertTruths } from '../../db/queries/runs';
@@ -30,6 +31,7 @@ export interface DemoExtent {
   sampleRateHz: number;
 }
 
+const HALF_MADE = 'demonstration-records.half-';
 const wholeDay: DemoExtent = { hours: '0-24', sampleRateHz: 20 };
 const group = { id: derivedId('demonstration group'), slug: 'lowmere', name: demoGroup };
 
@@ -112,8 +114,11 @@ export async function seedDemoRecords(
     deps.startUp.progress = 'Making the invented records of the demonstration';
     await rm(folder, { recursive: true, force: true });
     // The truth is written last; a folder under its final name is whole.
-    const half = `${folder}.half`;
-    await rm(half, { recursive: true, force: true });
+    // A generator that outlived a killed server must not write into ours: each try has a folder of its own.
+    for (const name of await readdir(dataFolder)) {
+      if (name.startsWith(HALF_MADE)) await rm(join(dataFolder, name), { recursive: true, force: true });
+    }
+    const half = join(dataFolder, `${HALF_MADE}${randomUUID()}`);
     await mkdir(half, { recursive: true });
     await generateRecords(
       half,

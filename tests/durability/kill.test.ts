@@ -207,14 +207,18 @@ async function startRun(place: Place): Promise<string> {
 const runNow = async (id: string) => runSchema.parse(await json(`/runs/${id}`));
 
 /** Looks again and again; fails with what was seen last after two minutes. */
-async function until<Seen>(look: () => Promise<Seen>, isEnough: (seen: Seen) => boolean): Promise<Seen> {
+async function until<Seen>(
+  look: () => Promise<Seen>,
+  isEnough: (seen: Seen) => boolean,
+  everyMs = 40,
+): Promise<Seen> {
   const deadlineMs = performance.now() + 120_000;
   for (;;) {
     const seen = await look();
     if (isEnough(seen)) return seen;
     if (performance.now() > deadlineMs)
       throw new Error(`waited too long; last seen: ${JSON.stringify(seen)}`);
-    await pause(40);
+    await pause(everyMs);
   }
 }
 
@@ -303,7 +307,14 @@ async function round(phase: Phase, turn: number): Promise<void> {
       }
     };
     const lanes = Promise.all([lane(), lane(), lane()]);
-    await pause(5 + spread(turn) * 350);
+    // So many are acknowledged, others are on their way.
+    const wanted = Math.floor(spread(turn) * (place.files.length - 3));
+    await until(
+      async () => acknowledged.length,
+      (heard) => heard >= wanted,
+      1,
+    );
+    await pause(spread(turn) * 12);
     const heard = [...acknowledged];
     await killAndRestart();
     await lanes;
@@ -312,10 +323,20 @@ async function round(phase: Phase, turn: number): Promise<void> {
   } else {
     for (const file of place.files) expect(await upload(place, file)).toBe(201);
     acknowledged = [...place.files];
-    runId = await startRun(place);
     if (phase === 'reading') {
-      await pause(spread(turn) * 250);
+      // All to be read once more, all at once; killed when some of it is done.
+      await waitUntilRead(place);
+      for (const { id } of place.files)
+        expect((await call(`/raw-files/${id}/reread`, 'POST', {})).status).toBe(200);
+      runId = await startRun(place);
+      const wanted = Math.floor(spread(turn) * (place.files.length - 2));
+      await until(
+        async () => (await filesOf(place)).filter(({ state }) => state === 'read').length,
+        (done) => done >= wanted,
+        5,
+      );
     } else {
+      runId = await startRun(place);
       const wanted = Math.floor(spread(turn) * (PERIODS - 1));
       await until(
         () => runNow(runId!),
@@ -352,7 +373,10 @@ describe('the kills', () => {
     const total = records.length * (ROUNDS.upload + ROUNDS.reading + ROUNDS.computing);
     expect(counts.sent).toBe(total);
     expect(counts.acknowledged).toBeLessThan(total);
-    expect(counts.filesReadAfterwards).toBeGreaterThan(0);
+    expect(counts.filesReadAfterwards).toBeGreaterThan(ROUNDS.reading);
+    expect(counts.acknowledged).toBeGreaterThan(
+      records.length * (ROUNDS.reading + ROUNDS.computing) + ROUNDS.upload,
+    );
     expect(counts.periodsFoundAfterKill.filter((done) => done > 0 && done < PERIODS).length).toBeGreaterThan(
       0,
     );
