@@ -29,6 +29,42 @@ export interface BlockRequest {
   sources: BlockSource[];
   /** Samples wanted before and behind the period [s]. */
   marginS: number;
+  /** Where the block's arrays come from; without it they are made anew. */
+  arrays?: BlockArrays;
+}
+
+/**
+ * Arrays for one block after another: those of the block before are used again, so only one block can be in use at a time. Fresh arrays
+ * for every period would be collected too late to keep memory flat.
+ */
+export class BlockArrays {
+  readonly #float64: Float64Array[] = [];
+  readonly #int32: Int32Array[] = [];
+  readonly #bytes: Uint8Array[] = [];
+  #used = { float64: 0, int32: 0, bytes: 0 };
+
+  /** From here on the arrays of the last block are free. */
+  reset(): void {
+    this.#used = { float64: 0, int32: 0, bytes: 0 };
+  }
+
+  float64(length: number): Float64Array {
+    const n = this.#used.float64++;
+    if ((this.#float64[n]?.length ?? -1) !== length) this.#float64[n] = new Float64Array(length);
+    return this.#float64[n].fill(NaN);
+  }
+
+  int32(length: number): Int32Array {
+    const n = this.#used.int32++;
+    if ((this.#int32[n]?.length ?? -1) !== length) this.#int32[n] = new Int32Array(length);
+    return this.#int32[n].fill(STATUS_MISSING);
+  }
+
+  bytes(length: number): Uint8Array {
+    const n = this.#used.bytes++;
+    if ((this.#bytes[n]?.length ?? -1) !== length) this.#bytes[n] = new Uint8Array(length);
+    return this.#bytes[n].fill(0);
+  }
 }
 
 type GasMeasure = NonNullable<Block['gasMeasures'][GasKey]>;
@@ -100,7 +136,8 @@ interface Merged {
  * @returns a block whose arrays belong to the caller; all missing where nothing was recorded
  */
 export function assembleBlock(request: BlockRequest): Block {
-  const { startMs, endMs, sampleRateHz, marginS } = request;
+  const { startMs, endMs, sampleRateHz, marginS, arrays = new BlockArrays() } = request;
+  arrays.reset();
   const sources = filesThatCount(
     request.sources.filter((source) => source.report.sampleRateHz === sampleRateHz),
     (source) => source.report,
@@ -114,12 +151,12 @@ export function assembleBlock(request: BlockRequest): Block {
     }
 
   const used = new Set<string>();
-  const main = merge(sources, startMs, length, sampleRateHz, gasMeasures, true, used);
+  const main = merge(sources, startMs, length, sampleRateHz, gasMeasures, true, used, arrays);
   const marginLength = Math.round(marginS * sampleRateHz);
   const marginMs = (marginLength / sampleRateHz) * 1000;
   const margin = (fromMs: number): MarginSamples | null => {
     if (marginLength === 0) return null;
-    const merged = merge(sources, fromMs, marginLength, sampleRateHz, gasMeasures, false, null);
+    const merged = merge(sources, fromMs, marginLength, sampleRateHz, gasMeasures, false, null, arrays);
     return merged.recorded === 0 ? null : { length: marginLength, values: merged.values };
   };
   return {
@@ -144,8 +181,9 @@ function merge(
   gasMeasures: Block['gasMeasures'],
   withStatus: boolean,
   used: Set<string> | null,
+  arrays: BlockArrays,
 ): Merged {
-  const merged: Merged = { length, values: {}, status: {}, present: new Uint8Array(length), recorded: 0 };
+  const merged: Merged = { length, values: {}, status: {}, present: arrays.bytes(length), recorded: 0 };
   const toMs = fromMs + (length / sampleRateHz) * 1000;
   const pieces: { source: BlockSource; columns: ChunkColumns; shift: number }[] = [];
   for (const source of sources)
@@ -177,10 +215,10 @@ function merge(
   for (const channel of new Set(sources.flatMap((source) => source.layout.columns.map((c) => c.channel)))) {
     const isStatus = statusChannels.includes(channel);
     if (isStatus && !withStatus) continue;
-    const values = isStatus ? null : new Float64Array(length).fill(NaN);
-    const status = isStatus ? new Int32Array(length).fill(STATUS_MISSING) : null;
+    const values = isStatus ? null : arrays.float64(length);
+    const status = isStatus ? arrays.int32(length) : null;
     // Slots that a file of higher precedence recorded with this channel, value or not; needed only where files may overlap.
-    const covered = pieces.length > 1 ? new Uint8Array(length) : null;
+    const covered = pieces.length > 1 ? arrays.bytes(length) : null;
     for (const { source, columns, shift } of pieces) {
       const column = source.layout.columns.find((c) => c.channel === channel);
       if (column === undefined) continue;

@@ -60,6 +60,9 @@ interface OpenChunk {
   placed: number;
 }
 
+/** Arrays of chunks that no file uses just now, by their shape: making them anew for each file costs memory that is freed late. */
+const spareChunks = new Map<string, OpenChunk[]>();
+
 interface ChannelSource {
   channel: ChannelKey;
   field: number;
@@ -119,7 +122,6 @@ export class Ingest {
   #bytes = 0;
 
   #open: OpenChunk[] = [];
-  #spare: OpenChunk[] = [];
   readonly #intakes: ChunkIntake[] = [];
 
   #rows = 0;
@@ -508,7 +510,7 @@ export class Ingest {
     if (this.#open.length >= OPEN_CHUNKS)
       this.#close(this.#open.reduce((a, b) => (b.startMs < a.startMs ? b : a)));
     if (this.#closedStarts.has(startMs)) this.#parts++;
-    const chunk = this.#spare.pop() ?? {
+    const chunk = this.#spares().pop() ?? {
       startMs,
       present: new Uint8Array(this.#slots),
       values: this.#valueChannels.map(() => new Float32Array(this.#slots).fill(NaN)),
@@ -572,7 +574,19 @@ export class Ingest {
     chunk.firstSlot = this.#slots;
     chunk.lastSlot = -1;
     chunk.placed = 0;
-    this.#spare.push(chunk);
+    const spares = this.#spares();
+    if (spares.length < OPEN_CHUNKS) spares.push(chunk);
+  }
+
+  #spares(): OpenChunk[] {
+    const shape = `${this.#slots} ${this.#valueChannels.length} ${this.#statusChannels.length}`;
+    let spares = spareChunks.get(shape);
+    if (spares === undefined) {
+      // One shape at a time: files of one layout follow one another.
+      spareChunks.clear();
+      spareChunks.set(shape, (spares = []));
+    }
+    return spares;
   }
 
   #percentile95(values: Float32Array): number | null {

@@ -109,11 +109,17 @@ export class ChunkFile {
     this.#batches = index.batches;
   }
 
-  /** @param part number of a chunk in `report.chunks` */
-  read(part: number): ChunkColumns {
+  /**
+   * @param part number of a chunk in `report.chunks`
+   * @param reused room for its bytes, when large enough; the columns are views of it
+   */
+  read(part: number, reused?: ArrayBuffer): ChunkColumns {
     const { offset, byteLength } = this.#batches[part];
     // Aligned to 8 bytes, so that the columns can be views of it.
-    const bytes = new Uint8Array(byteLength);
+    const bytes =
+      reused !== undefined && reused.byteLength >= byteLength
+        ? new Uint8Array(reused, 0, byteLength)
+        : new Uint8Array(byteLength);
     for (let at = 0; at < byteLength;) {
       const read = readSync(this.#fd, bytes, at, byteLength - at, offset + at);
       if (read === 0) throw new DamagedChunksError(this.#folder, 'the file ends too early');
@@ -132,7 +138,8 @@ export class ChunkFile {
 /** Keeps the chunk files used last open, and the chunks read last: neighbours share them through their margins. */
 export class ChunkStore {
   readonly #files = new Map<string, ChunkFile>();
-  readonly #chunks = new Map<string, ChunkColumns>();
+  readonly #chunks = new Map<string, { columns: ChunkColumns; turn: number }>();
+  #turn = 0;
 
   constructor(
     private readonly openFiles: number,
@@ -156,12 +163,26 @@ export class ChunkStore {
     return file;
   }
 
+  /** Chunks read before may be overwritten from here on. */
+  nextTurn(): void {
+    this.#turn++;
+  }
+
+  /** The columns are good until the next turn. */
   read(folder: string, part: number): ChunkColumns {
     const key = `${folder}\0${part}`;
-    const columns = this.#chunks.get(key) ?? this.file(folder).read(part);
+    let columns = this.#chunks.get(key)?.columns;
+    if (columns === undefined) {
+      let reused: ArrayBuffer | undefined;
+      const oldest = this.#chunks.entries().next().value;
+      if (oldest !== undefined && this.#chunks.size >= this.keptChunks && oldest[1].turn < this.#turn) {
+        this.#chunks.delete(oldest[0]);
+        reused = oldest[1].columns.present.buffer as ArrayBuffer;
+      }
+      columns = this.file(folder).read(part, reused);
+    }
     this.#chunks.delete(key);
-    this.#chunks.set(key, columns);
-    if (this.#chunks.size > this.keptChunks) this.#chunks.delete(this.#chunks.keys().next().value as string);
+    this.#chunks.set(key, { columns, turn: this.#turn });
     return columns;
   }
 

@@ -1,4 +1,4 @@
-import { assembleBlock } from '../../processing/chunks/assemble';
+import { assembleBlock, BlockArrays } from '../../processing/chunks/assemble';
 import { computePeriod } from '../../processing/pipeline';
 import type { Layout } from '../../processing/schemas/layout';
 import type { RecipeSettings } from '../../processing/schemas/recipe';
@@ -23,14 +23,17 @@ const OPEN_FILES = 8;
 /** A period of half an hour with margins touches three chunks. */
 const KEPT_CHUNKS = 4;
 const store = new ChunkStore(OPEN_FILES, KEPT_CHUNKS);
+const arrays = new BlockArrays();
 
 export function computeBlock(request: ComputeBlockRequest): PeriodResult {
   const { startMs, endMs, sampleRateHz, marginS, setUp, settings, context } = request;
+  store.nextTurn();
   const block = assembleBlock({
     startMs,
     endMs,
     sampleRateHz,
     marginS,
+    arrays,
     sources: request.sources.map(({ folder, columns, parts }) => {
       const { report } = store.file(folder);
       return {

@@ -38,7 +38,7 @@ import { computeStation } from './station-run';
 
 /** Command line: raw records in, table of half-hourly fluxes out. */
 
-const LINES_AT_ONCE = 200;
+const LINES_AT_ONCE = 50;
 const DAY_MS = 86_400_000;
 
 const stationWithSetUps = z.object({ station: stationSchema, setUps: z.array(setUpSchema).min(1) });
@@ -149,8 +149,13 @@ function* batches(periods: Iterable<PeriodResult>): Generator<PeriodResult[]> {
 }
 
 /** The table in pieces: a batch of periods at a time, the header from the first. */
-function* table(spool: ResultSpool, args: ComputeArguments, utcOffsetMinutes: number): Generator<string> {
-  const keys = catalogue.map((quantity) => quantity.key).filter((key) => spool.keys.has(key));
+function* table(
+  spool: ResultSpool,
+  used: ReadonlySet<string>,
+  args: ComputeArguments,
+  utcOffsetMinutes: number,
+): Generator<string> {
+  const keys = catalogue.map((quantity) => quantity.key).filter((key) => used.has(key));
   let fromMs: number | undefined;
   for (const batch of batches(spool.inOrder())) {
     const lines =
@@ -227,8 +232,8 @@ async function run(args: ComputeArguments, folder: string, signal: AbortSignal):
         );
         for (const { message } of report.warnings) reporter.line(`  ${message}`);
       },
-      onPeriod: (result) => {
-        spool.add(result);
+      onPeriod: (json, startMs) => {
+        spool.add(json, startMs);
         reporter.progress(`${spool.size} periods computed`);
       },
     });
@@ -244,7 +249,11 @@ async function run(args: ComputeArguments, folder: string, signal: AbortSignal):
     const withoutSetUp = plan.periods.filter((period) => period.kind === 'no-set-up').length;
     if (withoutSetUp > 0)
       reporter.say(`${withoutSetUp} periods lie before the first set-up and were left out.`);
-    for (const period of spool.inOrder()) outcomes[period.outcome] = (outcomes[period.outcome] ?? 0) + 1;
+    const keys = new Set<string>();
+    for (const { outcome, values } of spool.inOrder()) {
+      outcomes[outcome] = (outcomes[outcome] ?? 0) + 1;
+      for (const key of Object.keys(values)) keys.add(key);
+    }
     if ((outcomes.computed ?? 0) + (outcomes.partial ?? 0) === 0) {
       reporter.say(
         'Nothing could be computed, so no table was written. The reasons stand above, or in --json for single periods.',
@@ -252,7 +261,7 @@ async function run(args: ComputeArguments, folder: string, signal: AbortSignal):
       if (args.json !== null && spool.size > 0) writeJson(args.json);
       return exitCodes.nothing;
     }
-    writeOut(args.out, table(spool, args, utcOffsetMinutes));
+    writeOut(args.out, table(spool, keys, args, utcOffsetMinutes));
     if (args.json !== null) writeJson(args.json);
     const counts = Object.entries(outcomes).map(([outcome, n]) => `${n} ${outcome}`);
     reporter.line(
@@ -307,15 +316,15 @@ async function main(): Promise<number> {
     process.stdout.write(help);
     return exitCodes.done;
   }
-  const folder = mkdtempSync(join(tmpdir(), 'gustbook-compute-'));
   const interruption = new AbortController();
-  process.on('exit', () => rmSync(folder, { recursive: true, force: true }));
   for (const name of ['SIGINT', 'SIGTERM', 'SIGHUP'] as const)
     process.on(name, () => {
       // A second one does not wait for the threads.
       if (interruption.signal.aborted) process.exit(exitCodes.interrupted);
       interruption.abort(new Error(`interrupted by ${name}`));
     });
+  const folder = mkdtempSync(join(tmpdir(), 'gustbook-compute-'));
+  process.on('exit', () => rmSync(folder, { recursive: true, force: true }));
   try {
     return await run(args, folder, interruption.signal);
   } catch (error) {

@@ -35,6 +35,13 @@ export interface WorkerPool {
     request: IngestFileRequest,
     options?: { onProgress?: (share: number, rows: number) => void; signal?: AbortSignal },
   ): Promise<{ report: IngestReport } | { problem: RecordErrorJson }>;
+  /** The same as JSON texts, for callers that only pass them on. */
+  computeTexts<File extends FileInFolder>(
+    periods: readonly PlannedPeriod<File>[],
+    settings: RecipeSettings,
+    onPeriod: (json: string, startMs: number) => void,
+    signal?: AbortSignal,
+  ): Promise<void>;
   /** Computes planned periods, handing each over once, in any order. Rejects with the signal's reason when aborted. */
   computePlanned<File extends FileInFolder>(
     periods: readonly PlannedPeriod<File>[],
@@ -48,6 +55,7 @@ export interface WorkerPool {
     onPeriod: (result: PeriodResult) => void,
     signal?: AbortSignal,
   ): Promise<void>;
+  /** Stops what is under way and ends the threads. */
   close(): Promise<void>;
 }
 
@@ -67,8 +75,11 @@ export function createPool(threads: number, options: PoolOptions = {}): WorkerPo
     minThreads: threads,
     maxThreads: threads,
     idleTimeout: Infinity,
-    resourceLimits: { maxOldGenerationSizeMb, maxYoungGenerationSizeMb: 16 },
+    resourceLimits: { maxOldGenerationSizeMb, maxYoungGenerationSizeMb: 8 },
   });
+
+  const flags = new Set<Int32Array<SharedArrayBuffer>>();
+  let isClosing = false;
 
   /** Runs a task that watches a flag, and raises the flag when the signal asks. */
   async function run<Result>(
@@ -78,19 +89,23 @@ export function createPool(threads: number, options: PoolOptions = {}): WorkerPo
     transferList: readonly MessagePort[] = [],
   ): Promise<Result> {
     signal?.throwIfAborted();
+    if (isClosing) throw new Error('The pool is closed.');
     const cancelFlag = new Int32Array(new SharedArrayBuffer(4));
     const raise = (): void => {
       Atomics.store(cancelFlag, 0, 1);
     };
     signal?.addEventListener('abort', raise, { once: true });
+    flags.add(cancelFlag);
     try {
       const result = (await piscina.run(
         { ...task, cancelFlag },
         { name, transferList: [...transferList] as never },
       )) as Result;
       signal?.throwIfAborted();
+      if (isClosing) throw new Error('The pool was closed before this task was done.');
       return result;
     } finally {
+      flags.delete(cancelFlag);
       signal?.removeEventListener('abort', raise);
     }
   }
@@ -117,11 +132,14 @@ export function createPool(threads: number, options: PoolOptions = {}): WorkerPo
       }
     },
 
-    async computePlanned(periods, settings, onPeriod, signal) {
+    async computeTexts(periods, settings, onPeriod, signal) {
       const requests: ComputeBlockRequest[] = [];
       for (const period of periods) {
         if (period.kind === 'crossing')
-          onPeriod(crossingPeriod(period.startMs, period.endMs, period.what, period.atMs));
+          onPeriod(
+            JSON.stringify(crossingPeriod(period.startMs, period.endMs, period.what, period.atMs)),
+            period.startMs,
+          );
         if (period.kind !== 'compute') continue;
         const { startMs, endMs, sampleRateHz, marginS, setUp, context, sources } = period;
         requests.push({
@@ -145,8 +163,10 @@ export function createPool(threads: number, options: PoolOptions = {}): WorkerPo
       const lane = async (): Promise<void> => {
         while (next < requests.length && !hasFailed) {
           const batch = requests.slice(next, (next += PERIODS_A_TASK));
-          const results = await run<(PeriodResult | null)[]>('compute', { requests: batch }, signal);
-          for (const result of results) if (result !== null) onPeriod(result);
+          const results = await run<(string | null)[]>('compute', { requests: batch }, signal);
+          results.forEach((json, i) => {
+            if (json !== null) onPeriod(json, batch[i].startMs);
+          });
         }
       };
       const lanes = Array.from({ length: threads + 1 }, () =>
@@ -160,11 +180,26 @@ export function createPool(threads: number, options: PoolOptions = {}): WorkerPo
       if (failure !== undefined) throw failure.reason;
     },
 
+    async computePlanned(periods, settings, onPeriod, signal) {
+      await pool.computeTexts(
+        periods,
+        settings,
+        (json) => onPeriod(JSON.parse(json) as PeriodResult),
+        signal,
+      );
+    },
+
     async computeRun(request, onPeriod, signal) {
       await pool.computePlanned(planRun(request).periods, request.settings, onPeriod, signal);
     },
 
     async close() {
+      isClosing = true;
+      for (const flag of flags) Atomics.store(flag, 0, 1);
+      const arrived = new Int32Array(new SharedArrayBuffer(4));
+      await Promise.allSettled(
+        Array.from({ length: threads }, () => piscina.run({ arrived, threads }, { name: 'meet' })),
+      );
       await piscina.close({ force: true });
     },
   };

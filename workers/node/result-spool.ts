@@ -6,8 +6,6 @@ import type { PeriodResult } from '../../processing/state';
  * A result given again replaces the earlier one.
  */
 export class ResultSpool {
-  /** Catalogue keys that any period holds. */
-  readonly keys = new Set<string>();
   readonly #fd: number;
   readonly #places = new Map<number, { offset: number; byteLength: number }>();
   #end = 0;
@@ -20,13 +18,13 @@ export class ResultSpool {
     return this.#places.size;
   }
 
-  add(result: PeriodResult): void {
-    const bytes = Buffer.from(JSON.stringify(result));
+  /** @param json of a PeriodResult */
+  add(json: string, startMs: number): void {
+    const bytes = Buffer.from(json);
     for (let at = 0; at < bytes.length;)
       at += writeSync(this.#fd, bytes, at, bytes.length - at, this.#end + at);
-    this.#places.set(result.startMs, { offset: this.#end, byteLength: bytes.length });
+    this.#places.set(startMs, { offset: this.#end, byteLength: bytes.length });
     this.#end += bytes.length;
-    for (const key of Object.keys(result.values)) this.keys.add(key);
   }
 
   /** In order of time. */

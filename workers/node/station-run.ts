@@ -13,7 +13,6 @@ import {
 import type { Layout } from '../../processing/schemas/layout';
 import type { RecipeSettings } from '../../processing/schemas/recipe';
 import type { SetUp } from '../../processing/schemas/set-up';
-import type { PeriodResult } from '../../processing/state';
 import type { FileInFolder, WorkerPool } from './pool';
 import { unpackedPieces } from './unpacked-pieces';
 
@@ -39,8 +38,8 @@ export interface StationRunRequest {
 export interface StationRunHooks {
   onReading?: (path: string, share: number, rows: number) => void;
   onFile?: (path: string, outcome: { report: IngestReport } | { problem: RecordErrorJson }) => void;
-  /** A later result for the same period replaces the earlier one. */
-  onPeriod: (result: PeriodResult) => void;
+  /** A result as JSON; a later one for the same period replaces the earlier. */
+  onPeriod: (json: string, startMs: number) => void;
   signal?: AbortSignal;
 }
 
@@ -136,7 +135,7 @@ export async function computeStation(
     if (todo.length === 0) return;
     for (const period of todo) computed.set(period.startMs, identity(period));
     underWay.push(
-      pool.computePlanned(todo, settings, hooks.onPeriod, signal).catch((cause: unknown) => {
+      pool.computeTexts(todo, settings, hooks.onPeriod, signal).catch((cause: unknown) => {
         failure ??= { cause };
       }),
     );

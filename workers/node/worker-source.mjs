@@ -8,3 +8,4 @@ const worker = await import('./worker.ts');
 
 export const ingest = worker.ingest ?? worker.default.ingest;
 export const compute = worker.compute ?? worker.default.compute;
+export const meet = worker.meet ?? worker.default.meet;

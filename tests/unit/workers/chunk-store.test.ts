@@ -54,4 +54,20 @@ describe('chunk folders', () => {
       outs.forEach((out, i) => expect(store.read(out, 0).length).toBe(100 + i));
     store.close();
   });
+
+  it('never overwrite a chunk that is in use in the same turn', async () => {
+    const out = await stored('turns', fileOf(rows(72_000)));
+    const expected = ingest(fileOf(rows(72_000))).chunks;
+    const store = new ChunkStore(2, 2);
+    for (const parts of [
+      [0, 1, 2, 3],
+      [3, 2],
+      [1, 0, 3],
+    ]) {
+      store.nextTurn();
+      const read = parts.map((part) => store.read(out, part));
+      parts.forEach((part, i) => expect(read[i]).toEqual(expected[part].columns));
+    }
+    store.close();
+  });
 });
