@@ -76,7 +76,11 @@ export function LayoutEditor(props: LayoutEditorProps) {
         {shown.length < rows.length ? (
           <Button
             kind="quiet"
-            label={`Show ${rows.length - shown.length} quantities that are not recorded`}
+            label={
+              rows.length - shown.length === 1
+                ? 'Show the quantity that is not recorded'
+                : `Show ${rows.length - shown.length} quantities that are not recorded`
+            }
             onPress={() => setShowsUnused(true)}
           />
         ) : null}
