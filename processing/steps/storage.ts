@@ -14,7 +14,7 @@ import { addLedger, addReason, addSkipped, alreadyStopped, formatNumber } from '
 import { dryFromMoist } from './units';
 import { quantityText } from './wording';
 
-const version = 1;
+const version = 2;
 
 const minimumEdgePercent = defaultValue('storage.minimumEdgePercent');
 const madThreshold = defaultValue('recipe.despiking.threshold');
@@ -130,7 +130,7 @@ export interface EdgeMeans {
  *
  * @param means of a few minutes
  * @param measures how each gas was recorded
- * @param pressurePa of the period: one value for both boundaries, so that its noise stores nothing
+ * @param pressurePa around the boundary: a density that only follows the pressure is no storage
  * @returns state; NaN where something needed is missing
  * @assumes ideal gas; means stand for samples (non-linear parts are below 1e-4 of the ratio)
  * @reference definitions
@@ -257,6 +257,11 @@ function boundaryState(state: PeriodState, side: 'before' | 'after', halfSamples
         : values.subarray(0, halfSamples);
     return robustMean(part, minimum).mean;
   };
+  const pressurePa = boundaryPressurePa(
+    [inside(block.values.airPressure), outside(margin.values.airPressure)],
+    air.pressurePa,
+    state.settings.plausibility.airPressureKPa,
+  );
   // The cleaned series hold gases as molar density [mol m⁻³].
   const density = { co2: 'molar-density', h2o: 'molar-density' } as const;
   const within = edgeState(
@@ -266,7 +271,7 @@ function boundaryState(state: PeriodState, side: 'before' | 'after', halfSamples
       h2o: inside(state.series.h2o) * 1e3,
     },
     density,
-    air.pressurePa,
+    pressurePa,
   );
   const beyond = edgeState(
     {
@@ -275,13 +280,37 @@ function boundaryState(state: PeriodState, side: 'before' | 'after', halfSamples
       h2o: outside(margin.values.h2o),
     },
     { co2: block.gasMeasures.co2 ?? 'molar-density', h2o: block.gasMeasures.h2o ?? 'molar-density' },
-    air.pressurePa,
+    pressurePa,
   );
   return {
     temperatureK: (within.temperatureK + beyond.temperatureK) / 2,
     co2DryMoleFraction: (within.co2DryMoleFraction + beyond.co2DryMoleFraction) / 2,
     vapourDensity: (within.vapourDensity + beyond.vapourDensity) / 2,
   };
+}
+
+/**
+ * Pressure around a boundary: means of both sides, or of the one that was measured, else that of the period.
+ *
+ * @param sides means of both sides [Pa]; NaN where not measured
+ * @param periodPa pressure of the period [Pa]
+ * @param limits plausible pressure [kPa]
+ * @returns [Pa]
+ * @assumes the two boundaries are told apart by weather, not by the noise of a barometer: means of minutes
+ * @reference dry mole ratio instead of density, so that changes of pressure store nothing: Lee & Massman (2011), Boundary-Layer
+ *   Meteorol. 139:37–59, abstract
+ * @deviates none
+ */
+function boundaryPressurePa(
+  sides: readonly number[],
+  periodPa: number,
+  limits: { low: number; high: number },
+): number {
+  const measured = sides.filter(
+    (pressurePa) => pressurePa >= limits.low * 1000 && pressurePa <= limits.high * 1000,
+  );
+  if (measured.length === 0) return periodPa;
+  return measured.reduce((sum, pressurePa) => sum + pressurePa, 0) / measured.length;
 }
 
 function noteMissing(state: PeriodState, noStart: boolean, noEnd: boolean, edgeMinutes: number): void {

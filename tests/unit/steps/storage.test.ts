@@ -100,15 +100,19 @@ describe('storage of a period', () => {
   const margin = rate * 300;
 
   /** Dry ratio and temperature rise linearly through the period and its margins. */
-  function rampState(options: { co2Rise?: number; heatRise?: number } = {}): PeriodState {
-    const { co2Rise = 2e-6, heatRise = 1 } = options;
+  function rampState(
+    options: { co2Rise?: number; heatRise?: number; pressureRisePa?: number } = {},
+  ): PeriodState {
+    const { co2Rise = 2e-6, heatRise = 1, pressureRisePa = 0 } = options;
     const whole = length + 2 * margin;
+    const p = new Float64Array(whole);
     const ts = new Float64Array(whole);
     const c = new Float64Array(whole);
     const v = new Float64Array(whole);
     for (let i = 0; i < whole; i++) {
       const share = (i + 0.5 - margin) / length;
-      const state = moistAir(temperatureK + heatRise * (share - 0.5), 1500, 100_000);
+      p[i] = 100_000 + pressureRisePa * (share - 0.5);
+      const state = moistAir(temperatureK + heatRise * (share - 0.5), 1500, p[i]);
       ts[i] = sonicTemperatureK(state.temperatureK, state.specificHumidity);
       c[i] = (400e-6 + co2Rise * share) * state.dryAirMolarDensity;
       v[i] = state.vapourMolarDensity;
@@ -122,9 +126,11 @@ describe('storage of a period', () => {
       },
       rate,
     );
+    state.block.values.airPressure = p.slice(margin, margin + length);
     const outside = (from: number): MarginSamples => ({
       length: margin,
       values: {
+        airPressure: p.slice(from, from + margin),
         sonicTemperature: ts.slice(from, from + margin),
         co2: c.slice(from, from + margin).map((x) => x * 1e3),
         h2o: v.slice(from, from + margin).map((x) => x * 1e3),
@@ -148,6 +154,26 @@ describe('storage of a period', () => {
     expect(Math.abs(state.values.sensibleHeatStorage / heat - 1)).toBeLessThan(1e-4);
     expect(state.values.netExchange).toBe(-5e-6 + state.values.co2Storage);
     expect(state.reasons).toEqual([]);
+  });
+
+  it('stores nothing where only the pressure changes, but does where it was not measured', () => {
+    const state = storageStep(rampState({ co2Rise: 0, heatRise: 0, pressureRisePa: 50 }), settings);
+    // Without the change of pressure 50 Pa of 100 000 would pass for 0.2 µmol/mol of 400: by hand 0.2/2 of the ramp below.
+    const ramp = storageStep(rampState({ heatRise: 0 }), settings).values.co2Storage;
+    expect(Math.abs(state.values.co2Storage / ramp)).toBeLessThan(1e-6);
+    const unmeasured = rampState({ co2Rise: 0, heatRise: 0, pressureRisePa: 50 });
+    delete unmeasured.block.values.airPressure;
+    delete unmeasured.block.margins.before!.values.airPressure;
+    delete unmeasured.block.margins.after!.values.airPressure;
+    expect(storageStep(unmeasured, settings).values.co2Storage / ramp).toBeCloseTo(0.1, 2);
+  });
+
+  it('takes no pressure that cannot be', () => {
+    const expected = storageStep(rampState(), settings).values.co2Storage;
+    const state = rampState();
+    state.block.margins.before!.values.airPressure!.fill(0);
+    state.block.margins.after!.values.airPressure!.fill(NaN);
+    expect(storageStep(state, settings).values.co2Storage).toBeCloseTo(expected, 15);
   });
 
   it('is not fooled by spikes at the boundary', () => {
