@@ -351,8 +351,8 @@ def process(raw, counts, start, set_up, rate, signal_reference, edges, block_ave
             flags.append((name, grade, tuple(series)))
 
     x = {k: raw[k] for k in SERIES}
-    if counts["jumps"] or counts["backward"]:
-        flag("clock", 1)
+    # A step back leaves rows in the wrong place.
+    flag("clock", 2 if counts["backward"] else 1 if counts["jumps"] else 0)
 
     # Diagnostics
     present = np.isfinite(raw["sonic_status"])
@@ -457,7 +457,7 @@ def process(raw, counts, start, set_up, rate, signal_reference, edges, block_ave
     # Covariances
     uw, _ = pair_covariance(u, w)
     vw, _ = pair_covariance(v, w)
-    cov, error, rn = {}, {}, {}
+    cov, rn = {}, {}
     m = 200 * rate
     for name, c in aligned.items():
         if not np.isfinite(c).any():
@@ -466,7 +466,6 @@ def process(raw, counts, start, set_up, rate, signal_reference, edges, block_ave
         if pairs < 0.5 * n:
             del cov[name]
             continue
-        error[name] = random_error(w, c, m)
         rn[name] = steady_state(w, c, cov[name])
     rn["uw"] = steady_state(w, u, uw)
     for name in SERIES:
@@ -512,15 +511,36 @@ def process(raw, counts, start, set_up, rate, signal_reference, edges, block_ave
             break
     vapour_term = MU * (nc / air["rho_d"]) * b
     heat_term = gain * nc / air["t"] * wt
+
+    # Every flux is the covariance of w with one combination of scalars, so the sampling error of that covariance is its error.
+    error = {"u": random_error(w, u, m)}
+    part = {name: c - np.nanmean(x[name]) for name, c in aligned.items() if name in cov}
+    if "ts" in part:
+        if np.isfinite(b):
+            per_vapour = cf["h2o"] * 1e-3 * MV
+            by = 1 + 0.51 * air["q"] + humid * gain * air["rho_v"] / air["t"]
+            vapour = per_vapour * part["h2o"]
+            as_heat = cf_t * part["ts"] / by
+            # A sample without vapour counts as the mean where the term is only a correction.
+            error["ts"] = random_error(w, as_heat - humid * gain / by * np.nan_to_num(vapour, nan=0.0), m)
+            temperature = as_heat - humid * gain / by * vapour
+            error["h2o"] = random_error(w, gain * (vapour + air["rho_v"] / air["t"] * temperature), m)
+            if np.isfinite(c):
+                co2 = cf["co2"] * 1e-3 * part["co2"]
+                error["co2"] = random_error(
+                    w, co2 + MU * nc / air["rho_d"] * vapour + gain * nc / air["t"] * temperature, m)
+        else:
+            error["ts"] = random_error(w, cf_t * part["ts"], m)
     row.update(
         ustar=us, H=air["rho"] * air["cp"] * wt, LE=air["lam"] * evaporation, FC=1e6 * (c + vapour_term + heat_term),
         wT=wt, E=evaporation, zeta=zeta, L=length, wind_speed=speed, wind_dir=direction, t_air=air["t"],
         cf_tau=cf_m, cf_H=cf_t, cf_h2o=cf.get("h2o", np.nan), cf_co2=cf.get("co2", np.nan),
         cov_uw=uw, cov_vw=vw, cov_wts=a0, cov_wh2o=cov.get("h2o", np.nan), cov_wco2=cov.get("co2", np.nan),
         rn_tau=rn["uw"], rn_H=rn.get("ts", np.nan), rn_LE=rn.get("h2o", np.nan), rn_FC=rn.get("co2", np.nan),
-        ru_H=air["rho"] * air["cp"] * cf_t * error.get("ts", np.nan),
-        ru_LE=air["lam"] * gain * cf.get("h2o", np.nan) * error.get("h2o", np.nan) * 1e-3 * MV,
-        ru_FC=1e3 * cf.get("co2", np.nan) * error.get("co2", np.nan),
+        ru_ustar=cf_m * error["u"] / (2 * us),
+        ru_H=air["rho"] * air["cp"] * error.get("ts", np.nan),
+        ru_LE=air["lam"] * error.get("h2o", np.nan),
+        ru_FC=1e6 * error.get("co2", np.nan),
     )
     # Storage below the sensor from short means around the two boundaries
     if edges is not None:
@@ -533,28 +553,37 @@ def process(raw, counts, start, set_up, rate, signal_reference, edges, block_ave
     row["itc_w"], row["itc_u"] = itc_w, itc_u
 
     # Grades
-    def grade(steady, itc, series):
+    if not np.isfinite(b):
+        flag("no_humidity", 1, ["ts"])
+
+    def grade(steady, itc, series, flux):
+        if not np.isfinite(flux):
+            return 2
         worst = [grade_of(100 * steady, 30, 100), grade_of(100 * itc, 30, 100)]
         worst += [g for _, g, touched in flags if set(touched) & set(series)]
         return max(worst)
 
-    row["q_tau"] = grade(rn["uw"], np.nanmax([itc_u, itc_w]) if model_w else np.nan, ["u", "w"])
-    row["q_H"] = grade(rn.get("ts", np.nan), itc_w, ["w", "ts"])
-    row["q_LE"] = grade(rn.get("h2o", np.nan), itc_w, ["w", "h2o"])
-    row["q_FC"] = grade(rn.get("co2", np.nan), itc_w, ["w", "co2"])
+    row["q_tau"] = grade(rn["uw"], np.nanmax([itc_u, itc_w]) if model_w else np.nan, ["u", "w"], us)
+    row["q_H"] = grade(rn.get("ts", np.nan), itc_w, ["w", "ts"], row["H"])
+    row["q_LE"] = grade(rn.get("h2o", np.nan), itc_w, ["w", "h2o"], row["LE"])
+    # The density terms of FC need H2O.
+    row["q_FC"] = grade(rn.get("co2", np.nan), itc_w, ["w", "co2", "h2o"], row["FC"])
     row["flags"] = " ".join(f"{name}:{g}" for name, g, _ in flags)
     return row
 
 
-def dry_fraction(frame, at, half_width):
+def dry_fraction(frame, at, half_width, rate):
     """Mean dry mole fraction of CO2 [umol/mol] around an instant, or None."""
     t = frame["time"].to_numpy()
     centre = np.datetime64(at)
     i, j = np.searchsorted(t, [centre - np.timedelta64(half_width), centre + np.timedelta64(half_width)])
-    part = frame.iloc[i:j]
-    part = part[part["analyser_status"] == 0]
-    if len(part) < 100:
+    middle = np.searchsorted(t, centre)
+    good = frame["analyser_status"].to_numpy()[i:j] == 0
+    # Half of either side at least: a mean of one side alone does not belong to the boundary.
+    fewest = 0.5 * rate * half_width.total_seconds()
+    if good[:middle - i].sum() < fewest or good[middle - i:].sum() < fewest:
         return None
+    part = frame.iloc[i:j][good]
     mean = part[["ts", "co2", "h2o", "p"]].mean()
     nv = mean["h2o"] * 1e-3
     air = air_state(mean["ts"] + ZERO_C, mean["p"] * 1e3, nv)
@@ -584,8 +613,8 @@ def span_of_day(task):
         i = np.searchsorted(order, np.datetime64(start - timedelta(seconds=60)))
         j = np.searchsorted(order, np.datetime64(start + timedelta(seconds=PERIOD_S + 60)))
         raw, counts = slots(frame.iloc[i:j], start, rate, n)
-        before = dry_fraction(frame, start, half_width)
-        after = dry_fraction(frame, start + timedelta(seconds=PERIOD_S), half_width)
+        before = dry_fraction(frame, start, half_width, rate)
+        after = dry_fraction(frame, start + timedelta(seconds=PERIOD_S), half_width, rate)
         edges = None if before is None or after is None else (before, after)
         rows.append(process(raw, counts, start, set_up, rate, signal_reference, edges, block_average))
         start += timedelta(seconds=PERIOD_S)
@@ -593,7 +622,8 @@ def span_of_day(task):
 
 
 OUTPUT = ["start", "n", "ustar", "H", "LE", "FC", "SC", "wT", "E", "zeta", "L", "lag_co2", "lag_h2o", "rn_tau", "rn_H", "rn_LE", "rn_FC",
-          "itc_w", "itc_u", "sigma_u", "sigma_v", "sigma_w", "sigma_ts", "sigma_co2", "sigma_h2o", "ru_H", "ru_LE", "ru_FC",
+          "itc_w", "itc_u", "sigma_u", "sigma_v", "sigma_w", "sigma_ts", "sigma_co2", "sigma_h2o", "ru_ustar", "ru_H", "ru_LE",
+          "ru_FC",
           "cf_tau", "cf_H", "cf_h2o", "cf_co2", "cov_uw", "cov_vw", "cov_wts", "cov_wh2o", "cov_wco2", "wind_speed", "wind_dir", "t_air",
           "q_tau", "q_H", "q_LE", "q_FC", "flags"]
 
