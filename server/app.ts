@@ -65,6 +65,7 @@ export function createApp(
           method: req.method,
           path: req.url.split('?')[0],
         }),
+        res: (res: { statusCode: number }) => ({ statusCode: res.statusCode }),
       },
     }),
   );

@@ -1,5 +1,5 @@
 import { createServer } from 'node:http';
-import type { Server } from 'node:http';
+import type { RequestListener, Server } from 'node:http';
 import type { AddressInfo } from 'node:net';
 import { availableParallelism } from 'node:os';
 import { FolderInUseError, FolderLock } from '../db/folder-lock';
@@ -39,7 +39,11 @@ async function main(): Promise<void> {
   const workers = config.workers ?? Math.max(1, availableParallelism());
   const engine = createPool(workers);
   const queue = new JobQueue(database, log, workers);
-  const server = createServer();
+  // The port is known only once it listens: who asks before the rest stands is told to come again, and not left waiting.
+  let answer: RequestListener = (_req, res) => {
+    res.writeHead(503, { 'retry-after': '1' }).end();
+  };
+  const server = createServer((req, res) => answer(req, res));
   const port = await listen(server, config);
   const baseUrl =
     config.publicUrl ?? `http://${config.host.includes(':') ? `[${config.host}]` : config.host}:${port}`;
@@ -63,7 +67,7 @@ async function main(): Promise<void> {
     rateLimits: { general: 3000, signIn: 30 },
     trustedOrigins,
   };
-  server.on('request', createApp(deps));
+  answer = createApp(deps);
 
   const stopping = new AbortController();
   const stop = shutdown({
