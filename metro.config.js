@@ -25,15 +25,25 @@ config.resolver.blockList = [
   ...blocked.map((folder) => new RegExp(`^${escapedRoot}/${folder}.*`)),
 ];
 
-// zod brings all its languages along; only English messages are shown, and those it carries itself.
+// Metro keeps every module that is named anywhere. These are named by their packages and used by nobody here: zod's languages (only English
+// messages are shown, and those it carries itself), its compiler and its reader of JSON schemas, SVG from text, and lists that scroll by
+// themselves.
+const unused = [
+  { from: 'zod', names: /\/(locales\/index|compile|from-json-schema)\.js$/ },
+  { from: 'react-native-svg', names: /^\.\/xml$/ },
+  {
+    from: 'react-native-web',
+    names: /\/(exports\/(FlatList|SectionList|VirtualizedList)|components\/Animated(FlatList|SectionList))$/,
+  },
+];
 config.resolver.resolveRequest = (context, moduleName, platform) => {
-  if (
-    context.originModulePath.includes(`${path.sep}zod${path.sep}`) &&
-    moduleName.endsWith('locales/index.js')
-  ) {
-    return { type: 'empty' };
-  }
-  return context.resolveRequest(context, moduleName, platform);
+  const { originModulePath } = context;
+  const isUnused = unused.some(
+    ({ from, names }) =>
+      originModulePath.includes(`${path.sep}node_modules${path.sep}${from}${path.sep}`) &&
+      names.test(moduleName),
+  );
+  return isUnused ? { type: 'empty' } : context.resolveRequest(context, moduleName, platform);
 };
 
 // In development the page comes from Metro and the data from the server beside it.

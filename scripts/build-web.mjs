@@ -16,6 +16,7 @@ const stampFile = path.join(outputFolder, '.built-from');
 
 /** All that the export depends on; node_modules stands behind the lock file. */
 const sources = [
+  'entry.ts',
   'app',
   'components',
   'processing',

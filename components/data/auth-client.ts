@@ -1,6 +1,10 @@
-import { createAuthClient } from 'better-auth/react';
+import { api } from './api-client';
 
-/** Sign-in and sessions, at the same origin under /api/auth. */
-export const authClient = createAuthClient({
-  baseURL: typeof window === 'undefined' ? 'http://localhost' : window.location.origin,
-});
+/** Opens a session; ApiError 401 when address and password do not belong together. */
+export async function signIn(values: { email: string; password: string }): Promise<void> {
+  await api('/auth/sign-in/email', { method: 'POST', body: values });
+}
+
+export async function signOut(): Promise<void> {
+  await api('/auth/sign-out', { method: 'POST', body: {} });
+}

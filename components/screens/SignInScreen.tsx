@@ -6,7 +6,8 @@ import { useQueryClient } from '@tanstack/react-query';
 import { useForm } from 'react-hook-form';
 import { zodResolver } from '@hookform/resolvers/zod';
 import { z } from 'zod';
-import { authClient } from '../data/auth-client';
+import { ApiError } from '../data/api-client';
+import { signIn } from '../data/auth-client';
 import { meKey, useHealth } from '../data/me';
 import { roleLabels } from '../../server/contract/roles';
 import type { Health } from '../../server/contract/api';
@@ -102,13 +103,12 @@ function SignInForm({ next }: SignInScreenProps) {
     defaultValues: { email: '', password: '' },
   });
 
-  const signIn = async (values: SignInValues): Promise<void> => {
+  const enter = async (values: SignInValues): Promise<void> => {
     setProblem(null);
-    const answer = await authClient.signIn
-      .email({ email: values.email, password: values.password })
-      .catch(() => ({ error: { status: 0 } }));
-    if (answer.error) {
-      setProblem(problemOf(answer.error.status));
+    try {
+      await signIn(values);
+    } catch (error) {
+      setProblem(problemOf(error instanceof ApiError ? error.status : 0));
       return;
     }
     await queryClient.invalidateQueries({ queryKey: meKey() });
@@ -117,7 +117,7 @@ function SignInForm({ next }: SignInScreenProps) {
 
   return (
     <>
-      <form noValidate onSubmit={(event) => void form.handleSubmit(signIn)(event)}>
+      <form noValidate onSubmit={(event) => void form.handleSubmit(enter)(event)}>
         <View style={{ gap: space.l }}>
           <Text variant="title">Open your book</Text>
           {health.data?.status === 'starting' ? (
@@ -164,14 +164,14 @@ function SignInForm({ next }: SignInScreenProps) {
             label="Sign in"
             busy={form.formState.isSubmitting}
             busyLabel="Signing in"
-            onPress={() => void form.handleSubmit(signIn)()}
+            onPress={() => void form.handleSubmit(enter)()}
           />
         </View>
       </form>
       {health.data?.demo ? (
         <DemoSignIns
           signIns={health.data.demo.signIns}
-          onChoose={signIn}
+          onChoose={enter}
           isBusy={form.formState.isSubmitting}
         />
       ) : null}

@@ -2,7 +2,7 @@ import { useContext, useState } from 'react';
 import { Pressable, View } from 'react-native';
 import { router } from 'expo-router';
 import { useQueryClient } from '@tanstack/react-query';
-import { authClient } from '../data/auth-client';
+import { signOut } from '../data/auth-client';
 import { useMe } from '../data/me';
 import { ClockContext } from '../format/useClock';
 import { Button } from '../primitives/Button';
@@ -43,14 +43,16 @@ export function AccountMenu({ groupSlug, isGuest = false }: AccountMenuProps) {
   const role = me.data?.groups.find((group) => group.slug === groupSlug)?.role;
   const otherGroups = me.data?.groups.filter((group) => group.slug !== groupSlug) ?? [];
 
-  const signOut = async (): Promise<void> => {
+  const leave = async (): Promise<void> => {
     setIsLeaving(true);
     setError(null);
-    const answer = await authClient.signOut();
-    setIsLeaving(false);
-    if (answer.error) {
-      setError(answer.error);
+    try {
+      await signOut();
+    } catch (cause) {
+      setError(cause);
       return;
+    } finally {
+      setIsLeaving(false);
     }
     queryClient.clear();
     router.replace('/sign-in');
@@ -100,12 +102,7 @@ export function AccountMenu({ groupSlug, isGuest = false }: AccountMenuProps) {
         width={420}
         actions={
           isGuest ? undefined : (
-            <Button
-              label="Sign out"
-              onPress={() => void signOut()}
-              busy={isLeaving}
-              busyLabel="Signing out"
-            />
+            <Button label="Sign out" onPress={() => void leave()} busy={isLeaving} busyLabel="Signing out" />
           )
         }
       >
