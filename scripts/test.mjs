@@ -66,7 +66,6 @@ const stages = [
   suite('unit', 'vitest.config.mts'),
   { name: 'build-server', command: node('build-server.mjs') },
   { name: 'build-web', command: node('build-web.mjs') },
-  { name: 'first-load', command: node('check-first-load.mjs') },
   suite('api', 'vitest.api.config.mts'),
   suite('chain', 'vitest.chain.config.mts'),
   suite('durability', 'vitest.durability.config.mts'),
