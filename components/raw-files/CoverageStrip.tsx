@@ -41,7 +41,9 @@ export function CoverageStrip({ kept, chosen, clock }: CoverageStripProps) {
   const doubled = overlapMs(kept, chosen);
   const words =
     chosen.length === 0
-      ? `${clock.span(first, last)} in ${joinSpans(kept).length === 1 ? 'one piece' : `${joinSpans(kept).length} pieces`}.`
+      ? joinSpans(kept).length === 1
+        ? `${clock.span(first, last)}, no gap between one file and the next.`
+        : `${clock.span(first, last)} in ${joinSpans(kept).length} pieces.`
       : `Hatched: the chosen files, about ${clock.moment(chosenFrom)} to ${clock.moment(chosenTo)} (${clock.zone}). ${
           doubled > 1000
             ? `${formatDuration(doubled)} of it is here already; where two files hold the same instant, the earlier file counts.`

@@ -1,6 +1,6 @@
 import { View } from 'react-native';
 import type { CSSProperties } from 'react';
-import { Text } from '../primitives';
+import { Text, UnitText } from '../primitives';
 import { radius, useTheme } from '../tokens';
 
 export interface FirstLinesProps {
@@ -48,7 +48,7 @@ export function FirstLines({ names, units, uses, rows }: FirstLinesProps) {
                   ) : null}
                   <div>
                     <Text variant="label" size={12} soft={!uses[index]}>
-                      {uses[index] || 'left out'}
+                      <UnitText>{uses[index] || 'left out'}</UnitText>
                     </Text>
                   </div>
                 </th>

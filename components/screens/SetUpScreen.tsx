@@ -113,7 +113,7 @@ function SetUpPage({ group, summary, mode, setMode, mayAdd }: SetUpPageProps) {
         }
         subtitle={
           newest
-            ? `${name}. ${newest.why ? `${newest.why} ` : ''}By ${newest.author.name}, ${clock.moment(newest.createdAtMs)} (${clock.zone}).`
+            ? `${name}. ${newest.why ? `${newest.why.replace(/[^.!?]$/, '$&.')} ` : ''}By ${newest.author.name}, ${clock.moment(newest.createdAtMs)} (${clock.zone}).`
             : name
         }
         actions={

@@ -6,7 +6,6 @@ import { headingCount, seriousFindings, sidewaysPx } from './page-checks';
 import { makeRawRecords } from './raw-records';
 import type { RawRecords } from './raw-records';
 import { Visit, demoStation, group, keepPictures, launch, serverUrl, stationPage } from './visit';
-import type { Size } from './visit';
 
 /** Each page, as it stands with the demonstration, against what must hold of any page. */
 
@@ -93,42 +92,45 @@ const states: Record<string, PageState> = {
 };
 const names = Object.keys(states);
 
-/** Pages are opened in one window after another, so that the scripts come from its cache as they do for a reader. */
-function windowOf(size: Size, colours: 'light' | 'dark') {
+describe.each(['phone', 'wide'] as const)('each page, %s', (size) => {
+  // One window for all, so that the scripts come from its cache as they do for a reader.
   let guest: Visit;
   let reader: Visit;
   beforeAll(async () => {
-    guest = await Visit.begin(browser, { size, colours });
-    reader = await Visit.begin(browser, { size, colours, role: 'lead' });
+    guest = await Visit.begin(browser, { size });
+    reader = await Visit.begin(browser, { size, role: 'lead' });
   });
   afterAll(async () => {
     await guest?.end();
     await reader?.end();
   });
-  return async (name: string): Promise<Visit> => {
+
+  it.each(names)('%s: accessible, one heading, no sideways scroll, no complaint', async (name) => {
     const { path, isGuest, prepare } = states[name];
     const visit = (isGuest ? guest : reader).inSight();
     visit.complaints.length = 0;
     await visit.open(path());
     await prepare?.(visit);
-    return visit;
-  };
-}
-
-describe.each(['phone', 'wide'] as const)('each page, %s', (size) => {
-  const look = windowOf(size, 'light');
-  it.each(names)('%s: accessible, one heading, no sideways scroll, no complaint', async (name) => {
-    const visit = await look(name);
     expect(await seriousFindings(visit)).toEqual([]);
     expect(await headingCount(visit)).toBe(1);
     expect(await sidewaysPx(visit)).toBeLessThanOrEqual(0);
+    if (size === 'wide') {
+      await darken(visit);
+      expect(await seriousFindings(visit, 'colours')).toEqual([]);
+      await visit.page.emulateMedia({ colorScheme: 'light' });
+    }
     expect(visit.complaints).toEqual([]);
   });
 });
 
-describe('each page in dark colours', () => {
-  const look = windowOf('wide', 'dark');
-  it.each(names)('%s: enough contrast', async (name) => {
-    expect(await seriousFindings(await look(name), 'colours')).toEqual([]);
-  });
-});
+/** The device turns dark, and the page with it. */
+async function darken({ page }: Visit): Promise<void> {
+  const ground = () =>
+    page
+      .getByRole('main')
+      .first()
+      .evaluate((sheet) => getComputedStyle(sheet).backgroundColor);
+  const before = await ground();
+  await page.emulateMedia({ colorScheme: 'dark' });
+  await expect.poll(ground).not.toBe(before);
+}
