@@ -175,7 +175,8 @@ function Strip(props: SpineProps) {
     <View
       style={[
         { height, width },
-        interactive && webStyle({ cursor: dragging ? 'grabbing' : 'grab', touchAction: 'none', userSelect: 'none' }),
+        interactive &&
+          webStyle({ cursor: dragging ? 'grabbing' : 'grab', touchAction: 'none', userSelect: 'none' }),
       ]}
       {...(interactive
         ? {
