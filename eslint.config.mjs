@@ -139,7 +139,7 @@ export default [
       'scripts/**',
       'workers/node/**',
       'server/main.ts',
-      'tests/bench/**',
+      'tests/**',
       '*.config.*',
       'metro.config.js',
     ],
