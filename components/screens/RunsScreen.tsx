@@ -188,7 +188,9 @@ function RunItem({
             <FindingMark mark={mark} label="" />
             <Text strong>{words}</Text>
           </View>
-          <Text>{`${clock.moment(run.fromMs)} to ${clock.moment(run.toMs)} (${clock.zone})`}</Text>
+          {run.fromMs < run.toMs ? (
+            <Text>{`${clock.moment(run.fromMs)} to ${clock.moment(run.toMs)} (${clock.zone})`}</Text>
+          ) : null}
           <Text variant="small" soft>
             {`Started by ${run.author.name}, ${clock.moment(run.createdAtMs)}${took}. Software ${run.softwareVersion}.`}
           </Text>

@@ -143,6 +143,14 @@ export function SeriesScreen({ group, station, run: wantedRun }: SeriesScreenPro
       </PlainPage>
     );
   }
+  // stopped before its records were known, or still reading them: there is no time axis yet
+  if (run.fromMs >= run.toMs) {
+    return (
+      <PlainPage shell={shell} title={`Run ${run.number} has no half hours yet`}>
+        <RunState run={run} runsHref={stationPath(group, station, 'runs')} />
+      </PlainPage>
+    );
+  }
   return <RunSeries key={run.id} {...{ group, station, run, runs, shell, summary }} />;
 }
 

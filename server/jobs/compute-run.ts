@@ -95,6 +95,7 @@ async function advance(deps: Deps, engine: Engine, run: RunRow, signal: AbortSig
   if (plan.files.length === 0 || periods.length === 0) {
     return endAs(deps, run.id, {
       state: 'failed',
+      ...(plan.fromMs < plan.toMs ? { fromMs: plan.fromMs, toMs: plan.toMs } : {}),
       problem:
         problem ??
         (plan.periods.length > 0

@@ -61,8 +61,10 @@ export async function spineOf(
     }));
   });
   const { run } = request;
-  let firstMs = run?.fromMs ?? Infinity;
-  let lastMs = run?.toMs ?? -Infinity;
+  // A run that was never planned may have no span.
+  const hasSpan = run !== null && run.fromMs < run.toMs;
+  let firstMs = hasSpan ? run.fromMs : Infinity;
+  let lastMs = hasSpan ? run.toMs : -Infinity;
   for (const { startMs } of halfHours) {
     firstMs = Math.min(firstMs, startMs);
     lastMs = Math.max(lastMs, startMs + CHUNK_MS);

@@ -210,6 +210,7 @@ export async function makeStation(
   group: Group,
   someone: Someone,
   slug: string,
+  setUpChange: Partial<SetUp> = {},
 ): Promise<MadeStation> {
   const made = {
     slug,
@@ -226,7 +227,7 @@ export async function makeStation(
       systemId: made.systemId,
       setUpId: made.setUpId,
       station: station(slug),
-      setUp: setUp(),
+      setUp: setUp(setUpChange),
     })
     .expect(201);
   await bench

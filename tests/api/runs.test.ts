@@ -347,6 +347,23 @@ describe('corrections', () => {
 });
 
 describe('things that go wrong', () => {
+  it('a run over records that are older than the set-up says so, with the span of the records', async () => {
+    const made = await makeStation(bench, group, analyst, 'elder', { validFrom: '2027-06-18T00:00:00Z' });
+    // the record is read and computed in one go, before anybody knows its span
+    const file = await bring('elder', made.layoutId, records[0], `?compute=${aRecipeHash}`);
+    await readWhole(file.id);
+    const runs = async () =>
+      (await bench.as(analyst, 'get', `${root}/stations/elder/runs`).expect(200)).body as Run[];
+    await expect.poll(async () => (await runs())[0]?.state, patient).toBe('failed');
+    const [run] = await runs();
+    expect(run.problem).toMatch(/^No set-up holds/);
+    expect([run.fromMs, run.toMs]).toEqual([FIRST_MS, FIRST_MS + 2 * HALF_HOUR_MS]);
+    const { spine } = stationSummarySchema.parse(
+      (await bench.as(analyst, 'get', `${root}/stations/elder`).expect(200)).body,
+    );
+    expect([spine?.fromMs, spine?.toMs]).toEqual([FIRST_MS, FIRST_MS + 2 * HALF_HOUR_MS]);
+  });
+
   it('a file that is no record is called unreadable, says why, and does not hold up a run', async () => {
     const made = await makeStation(bench, group, analyst, 'birch');
     const bad = await bring('birch', made.layoutId, {
