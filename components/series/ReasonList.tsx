@@ -7,7 +7,7 @@ import type { StationClock } from '../format/useClock';
 import { formatQuantity, unitOf } from '../format/quantities';
 import { Button, FactRow, ReasonCard, Text, TextLink, UnitText } from '../primitives';
 import type { LimitBarProps } from '../primitives/LimitBar';
-import { gradeSpoken } from '../tokens';
+import { gradeWord } from '../tokens';
 import { passedTests } from './passed-tests';
 import { fluxGrade, reasonsOf } from './period-view';
 import type { PeriodReason } from './period-view';
@@ -46,7 +46,7 @@ export function ReasonList({
     <View>
       <Text variant={level === 2 ? 'section' : 'label'} level={level} style={{ paddingBottom: 6 }}>
         Why <UnitText>{fluxLabels[flux].symbol}</UnitText>{' '}
-        {grade === null ? 'has no value' : `is graded ${gradeSpoken(grade)}`}
+        {grade === null ? 'has no value' : `is graded ${grade}, ${gradeWord(grade)}`}
       </Text>
       {isClean && grade !== null ? (
         <ReasonCard

@@ -239,7 +239,7 @@ describe.each(['phone', 'wide'] as const)('the way from a new station to exporte
     await page.waitForURL(new RegExp(`/period/${rainyMs}`));
     await visit.settled();
     const main = page.getByRole('main');
-    await main.getByText('Why FC is graded 2 rejected').waitFor();
+    await main.getByText('Why FC is graded 2, rejected').waitFor();
     await main.getByText(deciding!.finding, { exact: true }).first().waitFor();
     const words = (await main.innerText()).replace(/\s+/g, ' ').replaceAll('−', '-');
     expect(words).toContain(deciding!.sentence.slice(0, 40));

@@ -284,7 +284,7 @@ function noteAmplitude(
     key,
     { label: `longest run in one bin, ${label}`, value: worst, unit: '%' },
     upperLimits(limits),
-    `${name} stuck for ${percentText(worst)}`,
+    `${name} stuck for ${formatDuration((worst / 100) * windowS)}${worst >= 99.95 ? ' or more' : ''}`,
     `${windowWords(windowS, atS)}, ${label} stays at one value${isExtreme ? ' far from its usual ones' : ''} for ${percentText(worst)} of the samples in a row. Moving air does not stand still: the signal froze or dropped out.`,
     { atS },
   );
