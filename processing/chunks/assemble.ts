@@ -1,5 +1,6 @@
 import { celsiusZeroK, molarMassCo2, molarMassWater } from '../constants';
 import { defaultValue } from '../defaults';
+import { seriesKernel } from '../numerics/series-kernel';
 import { statusChannels, type ChannelKey, type Layout } from '../schemas/layout';
 import { gasKeys, type Block, type GasKey, type MarginSamples } from '../state';
 import {
@@ -200,17 +201,15 @@ function merge(
   for (const { source, columns, shift } of pieces) {
     const from = Math.max(0, -shift);
     const to = Math.min(columns.length, length - shift);
-    let added = 0;
-    for (let i = from; i < to; i++)
-      if (columns.present[i] === 1) {
-        added++;
-        if (merged.present[shift + i] === 0) {
-          merged.present[shift + i] = 1;
-          merged.recorded++;
-        }
-      }
+    const { added, fresh } = markPresent(columns.present, from, to, shift, merged.present);
+    merged.recorded += fresh;
     if (added > 0) used?.add(source.report.contentHash);
   }
+
+  const ends = pieces.map(({ columns, shift }) => ({ first: shift, behind: shift + columns.length }));
+  const mayOverlap = ends.some((a, i) =>
+    ends.some((b, k) => k > i && a.first < b.behind && b.first < a.behind),
+  );
 
   for (const channel of new Set(sources.flatMap((source) => source.layout.columns.map((c) => c.channel)))) {
     const isStatus = statusChannels.includes(channel);
@@ -218,7 +217,7 @@ function merge(
     const values = isStatus ? null : arrays.float64(length);
     const status = isStatus ? arrays.int32(length) : null;
     // Slots that a file of higher precedence recorded with this channel, value or not; needed only where files may overlap.
-    const covered = pieces.length > 1 ? arrays.bytes(length) : null;
+    const covered = mayOverlap ? arrays.bytes(length) : null;
     for (const { source, columns, shift } of pieces) {
       const column = source.layout.columns.find((c) => c.channel === channel);
       if (column === undefined) continue;
@@ -229,28 +228,97 @@ function merge(
       const { present } = columns;
       const codes = columns.status[channel];
       if (status !== null && codes !== undefined)
-        for (let i = from; i < to; i++) {
-          if (present[i] === 0 || (covered !== null && covered[shift + i] === 1)) continue;
-          status[shift + i] = codes[i];
-          if (covered !== null) covered[shift + i] = 1;
-        }
+        copyCodes({ from, to, shift, present, covered }, codes, status);
       const written = columns.values[channel];
       if (values !== null && written !== undefined) {
-        const { factor, offset, speedOfSound = false } = conversions[channel][column.unit];
-        for (let i = from; i < to; i++) {
-          if (present[i] === 0 || (covered !== null && covered[shift + i] === 1)) continue;
-          const value = written[i];
-          const inner = (speedOfSound ? value * value : value) * factor + offset;
-          // An infinity (a number too large for a chunk) is no measurement.
-          values[shift + i] = inner - inner === 0 ? inner : NaN;
-          if (covered !== null) covered[shift + i] = 1;
-        }
+        copyValues({ from, to, shift, present, covered }, written, conversions[channel][column.unit], values);
       }
     }
     if (values !== null) merged.values[channel] = values;
     if (status !== null) merged.status[channel] = status;
   }
   return merged;
+}
+
+// Loops over samples stand in functions of their own: the compiler keeps those, and gives up again and again on longer ones around them.
+
+/** Marks the slots of a block that a chunk recorded; `fresh`: those that no chunk before had. */
+function markPresent(
+  present: Uint8Array,
+  from: number,
+  to: number,
+  shift: number,
+  into: Uint8Array,
+): { added: number; fresh: number } {
+  if (to <= from) return { added: 0, fresh: 0 };
+  const isWhole = !present.subarray(from, to).includes(0);
+  if (isWhole && !into.subarray(from + shift, to + shift).includes(1)) {
+    into.fill(1, from + shift, to + shift);
+    return { added: to - from, fresh: to - from };
+  }
+  let added = 0;
+  let fresh = 0;
+  for (let i = from; i < to; i++) {
+    if (present[i] !== 1) continue;
+    added++;
+    if (into[shift + i] === 1) continue;
+    into[shift + i] = 1;
+    fresh++;
+  }
+  return { added, fresh };
+}
+
+/** Part of a chunk that goes into a block. */
+interface Part {
+  /** Slots of the chunk's columns. */
+  from: number;
+  to: number;
+  /** Slot in the block of the chunk's first. */
+  shift: number;
+  present: Uint8Array;
+  covered: Uint8Array | null;
+}
+
+/** Which samples of a part count, for parts that may lie over others; marks them as covered. */
+function uncovered({ from, to, shift, present, covered }: Part): Uint8Array {
+  if (covered === null) return present;
+  const counts = new Uint8Array(present.length);
+  for (let i = from; i < to; i++) {
+    if (present[i] === 0 || covered[shift + i] === 1) continue;
+    counts[i] = 1;
+    covered[shift + i] = 1;
+  }
+  return counts;
+}
+
+function copyCodes(part: Part, codes: Int32Array, into: Int32Array): void {
+  const { from, to, shift } = part;
+  if (to <= from) return;
+  const counts = uncovered(part);
+  if (!counts.subarray(from, to).includes(0)) {
+    into.set(codes.subarray(from, to), from + shift);
+    return;
+  }
+  for (let i = from; i < to; i++) if (counts[i] !== 0) into[shift + i] = codes[i];
+}
+
+function copyValues(part: Part, written: Float32Array, conversion: Conversion, into: Float64Array): void {
+  const { from, to, shift } = part;
+  const { factor, offset, speedOfSound = false } = conversion;
+  if (to <= from) return;
+  const counts = uncovered(part).subarray(from, to);
+  const kernel = seriesKernel(to - from);
+  const [work] = kernel.work;
+  const pointer = kernel.pointerOfSingles(written.subarray(from, to));
+  // An infinity (a number too large for a chunk) is no measurement.
+  kernel.run.convertSingles(pointer, to - from, factor, offset, speedOfSound ? 1 : 0, work);
+  const converted = kernel.valuesAt(work, to - from);
+  if (counts.includes(0)) takeCounting(counts, converted, into, from + shift);
+  else into.set(converted, from + shift);
+}
+
+function takeCounting(counts: Uint8Array, values: Float64Array, into: Float64Array, at: number): void {
+  for (let i = 0; i < counts.length; i++) if (counts[i] !== 0) into[at + i] = values[i];
 }
 
 /** Clock findings of the half hours that the period touches. */

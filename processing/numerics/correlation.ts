@@ -39,26 +39,30 @@ interface RunningSums {
   valid: Int32Array;
 }
 
-/** Without gaps only the ends of a series are asked for, out to the largest lag. */
-function runningSums({ values, mean: taken }: Centred, maxLag: number, isComplete: boolean): RunningSums {
+function runningSums({ values, mean: taken }: Centred): RunningSums {
   const n = values.length;
   const sum = new Float64Array(n + 1);
   const valid = new Int32Array(n + 1);
   for (let i = 0; i < n; i++) {
-    if (isComplete && i === maxLag && i < n - maxLag) {
-      // The series adds up to 0 but for rounding: from the end backwards it does so as well as from the beginning.
-      i = n - maxLag;
-      let rest = 0;
-      for (let j = i; j < n; j++) rest += values[j] - taken;
-      sum[i] = -rest;
-      valid[i] = i;
-    }
     const deviation = values[i] - taken;
     const isThere = deviation === deviation;
     sum[i + 1] = isThere ? sum[i] + deviation : sum[i];
     valid[i + 1] = isThere ? valid[i] + 1 : valid[i];
   }
   return { sum, valid };
+}
+
+/** Sums of the first and of the last 0 … most samples less their mean, of a series without gaps. */
+function endSums({ values, mean: taken }: Centred, most: number): { head: Float64Array; tail: Float64Array } {
+  const n = values.length;
+  const reach = Math.min(most, n);
+  const head = new Float64Array(most + 1);
+  const tail = new Float64Array(most + 1);
+  for (let i = 0; i < reach; i++) {
+    head[i + 1] = head[i] + (values[i] - taken);
+    tail[i + 1] = tail[i] + (values[n - 1 - i] - taken);
+  }
+  return { head, tail };
 }
 
 /** What the valid pairs of every lag add up to, besides their products. */
@@ -68,43 +72,77 @@ interface PairSums {
   sumY: Float64Array;
 }
 
+function emptySums(maxLag: number): PairSums {
+  const size = 2 * maxLag + 1;
+  return { pairs: new Float64Array(size), sumX: new Float64Array(size), sumY: new Float64Array(size) };
+}
+
+/** Pair sums of series without gaps: a lag cuts off one end of either, and the whole adds up to 0 but for rounding. */
+function pairSumsOfWhole(x: Centred, y: Centred, maxLag: number): PairSums {
+  const n = x.values.length;
+  const out = emptySums(maxLag);
+  const ofX = endSums(x, maxLag);
+  const ofY = endSums(y, maxLag);
+  for (let shift = 0; shift <= Math.min(maxLag, n - 1); shift++) {
+    const [later, earlier] = [maxLag + shift, maxLag - shift];
+    out.pairs[later] = out.pairs[earlier] = n - shift;
+    out.sumX[later] = -ofX.tail[shift];
+    out.sumY[later] = -ofY.head[shift];
+    out.sumX[earlier] = -ofX.head[shift];
+    out.sumY[earlier] = -ofY.tail[shift];
+  }
+  return out;
+}
+
 /**
  * Pair sums lag by lag: what lies in range, less what meets a gap of the other series. Exact, and cheap while gaps are few; a long gap
  * costs no more than a short one.
  */
 function pairSumsByGaps(x: Centred, y: Centred, maxLag: number): PairSums {
-  const n = x.values.length;
-  const size = 2 * maxLag + 1;
-  const out: PairSums = {
-    pairs: new Float64Array(size),
-    sumX: new Float64Array(size),
-    sumY: new Float64Array(size),
-  };
-  const isComplete = x.gaps.length + y.gaps.length === 0;
-  const ofX = runningSums(x, maxLag, isComplete);
-  const ofY = runningSums(y, maxLag, isComplete);
-  const within = (i: number): number => (i < 0 ? 0 : i > n ? n : i);
+  if (x.gaps.length + y.gaps.length === 0) return pairSumsOfWhole(x, y, maxLag);
+  const out = emptySums(maxLag);
+  sumByGaps(runningSums(x), runningSums(y), gapEnds(x), gapEnds(y), maxLag, out);
+  return out;
+}
+
+/** First of each gap and first behind it, one after the other. */
+function gapEnds({ gaps }: Centred): Int32Array {
+  return Int32Array.from(gaps.flat());
+}
+
+function sumByGaps(
+  ofX: RunningSums,
+  ofY: RunningSums,
+  gapsX: Int32Array,
+  gapsY: Int32Array,
+  maxLag: number,
+  out: PairSums,
+): void {
+  const n = ofX.sum.length - 1;
   for (let lag = -maxLag; lag <= maxLag; lag++) {
-    const firstX = within(-lag);
-    const endX = within(n - lag);
+    const at = lag + maxLag;
+    const firstX = Math.min(n, Math.max(0, -lag));
+    const endX = Math.min(n, Math.max(0, n - lag));
+    out.pairs[at] = 0;
     if (endX <= firstX) continue;
     let pairs = ofX.valid[endX] - ofX.valid[firstX];
     let sumX = ofX.sum[endX] - ofX.sum[firstX];
     let sumY = ofY.sum[endX + lag] - ofY.sum[firstX + lag];
-    for (let g = 0; g < y.gaps.length; g++) {
-      const from = within(y.gaps[g][0] - lag);
-      const to = within(y.gaps[g][1] - lag);
+    for (let g = 0; g < gapsY.length; g += 2) {
+      const from = Math.min(n, Math.max(0, gapsY[g] - lag));
+      const to = Math.min(n, Math.max(0, gapsY[g + 1] - lag));
       sumX -= ofX.sum[to] - ofX.sum[from];
       pairs -= ofX.valid[to] - ofX.valid[from];
     }
-    for (let g = 0; g < x.gaps.length; g++)
-      sumY -= ofY.sum[within(x.gaps[g][1] + lag)] - ofY.sum[within(x.gaps[g][0] + lag)];
-    const at = lag + maxLag;
+    for (let g = 0; g < gapsX.length; g += 2) {
+      const from = Math.min(n, Math.max(0, gapsX[g] + lag));
+      const to = Math.min(n, Math.max(0, gapsX[g + 1] + lag));
+      sumY -= ofY.sum[to] - ofY.sum[from];
+    }
     out.pairs[at] = pairs;
     out.sumX[at] = sumX;
     out.sumY[at] = sumY;
   }
-  return out;
 }
 
 /** 1 where a sample is there, 0 where it is missing. */

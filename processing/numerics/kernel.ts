@@ -10,21 +10,19 @@ export interface NumericsKernel {
   leaveOutOutside(x: number, n: number, low: number, high: number, out: number): void;
   vectorSums(u: number, v: number, w: number, n: number, out: number): void;
   rotate(u: number, v: number, w: number, n: number, matrix: number): void;
+  withoutLine(...of: [x: number, n: number, level: number, slope: number, start: number, into: number]): void;
+  directionSums(u: number, v: number, n: number, out: number): void;
+  slopes(u: number, v: number, w: number, n: number, limit: number, into: number): number;
+  areAll(x: number, n: number, code: number): number;
+  convertSingles(
+    ...of: [x: number, n: number, factor: number, offset: number, isSquared: number, into: number]
+  ): void;
   takeValid(x: number, n: number, into: number, out: number): number;
   deviations(x: number, n: number, middle: number): void;
-  countInBins(x: number, n: number, min: number, scale: number, bins: number, counts: number): void;
-  takeBin(
-    ...of: [
-      x: number,
-      n: number,
-      min: number,
-      scale: number,
-      bins: number,
-      wanted: number,
-      into: number,
-      out: number,
-    ]
-  ): number;
+  countInBins(
+    ...of: [x: number, n: number, min: number, scale: number, bins: number, counts: number, noted: number]
+  ): void;
+  takeBin(x: number, n: number, noted: number, wanted: number, into: number): number;
   runningSums(x: number, n: number, offset: number, total: number, squares: number): void;
   largestSteps(total: number, squares: number, n: number, half: number, out: number): void;
   runsInBins(

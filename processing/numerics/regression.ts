@@ -69,8 +69,10 @@ export function removeLine(
   line: Line = leastSquaresLine(values),
 ): Line {
   const slope = line.n < 2 ? 0 : line.slope;
-  for (let i = 0; i < values.length; i++) {
-    into[i] = values[i] - line.valueAtCentre - slope * (i - line.centre);
-  }
+  const kernel = seriesKernel(values.length);
+  const [work] = kernel.work;
+  const from = kernel.pointerOf(values);
+  kernel.run.withoutLine(from, values.length, line.valueAtCentre, slope, -line.centre, work);
+  into.set(kernel.valuesAt(work, values.length));
   return line;
 }

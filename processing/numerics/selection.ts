@@ -24,23 +24,6 @@ export function scratch(length: number, slot = 0): Float64Array {
 }
 
 /**
- * Copies the valid values of a series to the front of a work array.
- *
- * @param values Float64Array, not mutated; NaN = missing
- * @param into at least as long
- * @returns how many were copied
- */
-export function takeValid(values: Float64Array, into: Float64Array): number {
-  let n = 0;
-  for (let i = 0; i < values.length; i++) {
-    const value = values[i];
-    into[n] = value;
-    if (value === value) n++;
-  }
-  return n;
-}
-
-/**
  * Puts the k-th smallest value at index k: smaller or equal ones before it, larger or equal ones after it.
  *
  * @param values work array, reordered between `left` and `right`; no NaN there
@@ -113,7 +96,7 @@ interface OrderPair {
  * Two neighbouring order statistics of values without gaps that lie in the kernel's memory. They are counted in bins of equal width first;
  * only the few of one bin are then set in order.
  *
- * @param pointer where the values are; not in the second work array
+ * @param pointer where the values are; not in the second or third work array
  * @param k 0 … n − 1
  * @param min,max extremes of the values
  */
@@ -125,19 +108,25 @@ function orderPair(
   min: number,
   max: number,
 ): OrderPair {
-  const { run, results, out, counts, countValues } = kernel;
+  const { run, counts, countValues } = kernel;
   const scale = bins / (max - min);
   const isSpread = n >= worthCounting && scale > 0 && scale < Infinity;
   if (!isSpread) return selectedPair(kernel.valuesAt(pointer, n), n, k);
-  run.countInBins(pointer, n, min, scale, bins, counts);
+  const [, taken, noted] = kernel.work;
+  run.countInBins(pointer, n, min, scale, bins, counts, noted);
   let wanted = 0;
   let before = 0;
   while (before + countValues[wanted] <= k) before += countValues[wanted++];
-  const m = run.takeBin(pointer, n, min, scale, bins, wanted, kernel.work[1], out);
-  // The next one in order is in the same bin, or the smallest of those behind it.
-  const behind = results[0];
-  const pair = selectedPair(kernel.workValues[1], m, k - before);
-  return k - before < m - 1 ? pair : { lower: pair.lower, upper: k + 1 < n ? behind : NaN };
+  const inside = countValues[wanted];
+  let behind = wanted + 1;
+  while (behind < bins && countValues[behind] === 0) behind++;
+  run.takeBin(pointer, n, noted, wanted, taken);
+  const pair = selectedPair(kernel.workValues[1], inside, k - before);
+  if (k - before < inside - 1 || behind === bins) return pair;
+  // The next one in order is the smallest of the next bin that holds any.
+  const m = run.takeBin(pointer, n, noted, behind, taken);
+  run.sums(taken, m, 0, kernel.out);
+  return { lower: pair.lower, upper: kernel.results[3] };
 }
 
 function selectedPair(values: Float64Array, n: number, k: number): OrderPair {
@@ -167,27 +156,16 @@ function medianOf({ lower, upper }: OrderPair, n: number): number {
  */
 export function quantileInPlace(values: Float64Array, n: number, p: number): number {
   if (n === 0) return NaN;
-  return quantilesInPlace(values, n, [p])[0];
+  if (n < worthCounting) return interpolated(n, p, (k) => selectedPair(values, n, k));
+  return quantile(values.subarray(0, n), p);
 }
 
-/** Several quantiles of the same values; see `quantileInPlace`. */
-export function quantilesInPlace(values: Float64Array, n: number, ps: readonly number[]): number[] {
-  if (n === 0) return ps.map(() => NaN);
-  let pairAt = (k: number): OrderPair => selectedPair(values, n, k);
-  if (n >= worthCounting) {
-    const kernel = seriesKernel(n);
-    const pointer = kernel.pointerOf(values.subarray(0, n));
-    kernel.run.sums(pointer, n, 0, kernel.out);
-    const [, , , min, max] = kernel.results;
-    pairAt = (k) => orderPair(kernel, pointer, n, k, min, max);
-  }
-  return ps.map((p) => {
-    const position = p * (n - 1);
-    const k = Math.floor(position);
-    const { lower, upper } = pairAt(k);
-    const fraction = position - k;
-    return fraction === 0 ? lower : lower + fraction * (upper - lower);
-  });
+function interpolated(n: number, p: number, pairAt: (k: number) => OrderPair): number {
+  const position = p * (n - 1);
+  const k = Math.floor(position);
+  const { lower, upper } = pairAt(k);
+  const fraction = position - k;
+  return fraction === 0 ? lower : lower + fraction * (upper - lower);
 }
 
 /**
@@ -213,8 +191,17 @@ export function median(values: Float64Array): number {
  * @returns quantile in the unit of the values; NaN when none is valid
  */
 export function quantile(values: Float64Array, p: number): number {
-  const work = scratch(values.length);
-  return quantileInPlace(work, takeValid(values, work), p);
+  return quantiles(values, [p])[0];
+}
+
+/** Several quantiles of the same values; see `quantile`. */
+export function quantiles(values: Float64Array, ps: readonly number[]): number[] {
+  const kernel = seriesKernel(values.length);
+  const [work] = kernel.work;
+  const n = kernel.run.takeValid(kernel.pointerOf(values), values.length, work, kernel.out);
+  if (n === 0) return ps.map(() => NaN);
+  const [min, max] = kernel.results;
+  return ps.map((p) => interpolated(n, p, (k) => orderPair(kernel, work, n, k, min, max)));
 }
 
 /** Median, its absolute deviations' median, and how far the farthest value lies from it. */

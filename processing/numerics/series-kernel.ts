@@ -26,6 +26,9 @@ export interface SeriesKernel {
    * @param place series that are needed together take different ones
    */
   pointerOf(x: Float64Array, place?: 0 | 1 | 2): number;
+  /** Where the kernel finds codes, and single-precision values; copied in. */
+  pointerOfCodes(codes: Int32Array): number;
+  pointerOfSingles(x: Float32Array): number;
   /** Brings back what the kernel made of a series that `pointerOf` had copied; nothing to do for resident ones. */
   bringBack(x: Float64Array, place?: 0 | 1 | 2): void;
   /** What stands at a pointer. */
@@ -81,6 +84,18 @@ class Memory implements SeriesKernel {
     if (x.buffer === this.buffer) return x.byteOffset;
     const { pointer, values } = this.copies[place];
     values.set(x);
+    return pointer;
+  }
+
+  pointerOfCodes(codes: Int32Array): number {
+    const { pointer } = this.copies[0];
+    new Int32Array(this.buffer, pointer, codes.length).set(codes);
+    return pointer;
+  }
+
+  pointerOfSingles(x: Float32Array): number {
+    const { pointer } = this.copies[0];
+    new Float32Array(this.buffer, pointer, x.length).set(x);
     return pointer;
   }
 

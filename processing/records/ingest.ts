@@ -8,7 +8,7 @@ import {
   type ChunkIntake,
   type IngestReport,
 } from '../chunks/chunk';
-import { quantileInPlace } from '../numerics/selection';
+import { quantile, quantileInPlace } from '../numerics/selection';
 import { statusChannels, type ChannelKey, type Layout } from '../schemas/layout';
 import { BlockParser, ROWS_PER_BLOCK, type BadRow, type RowBlock } from './block-parser';
 import { FIRST_NUMBER_COLUMN } from './kernel';
@@ -591,10 +591,10 @@ export class Ingest {
 
   #percentile95(values: Float32Array): number | null {
     if (this.#work.length < values.length) this.#work = new Float64Array(this.#slots);
-    const work = this.#work;
-    let n = 0;
-    for (let i = 0; i < values.length; i++) if (values[i] === values[i]) work[n++] = values[i];
-    return n === 0 ? null : quantileInPlace(work, n, 0.95);
+    const work = this.#work.subarray(0, values.length);
+    work.set(values);
+    const found = quantile(work, 0.95);
+    return found === found ? found : null;
   }
 
   #lookForValues(columns: ChunkColumns): void {

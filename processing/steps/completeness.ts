@@ -65,6 +65,7 @@ export function gapsIn(present: Uint8Array): {
   longestGap: number;
   longestGapAt: number;
 } {
+  if (!present.includes(0)) return { recorded: present.length, gaps: 0, longestGap: 0, longestGapAt: -1 };
   let recorded = 0;
   let gaps = 0;
   let run = 0;

@@ -1,4 +1,5 @@
 import { STATUS_MISSING } from '../chunks/chunk';
+import { seriesKernel } from '../numerics/series-kernel';
 import type { RecipeSettings } from '../schemas/recipe';
 import type { ChannelKey } from '../schemas/layout';
 import type { Grade, PeriodContext, PeriodState, SeriesKey, Step } from '../state';
@@ -62,6 +63,8 @@ export function markBadStatus(
   rule: GoodCodeRule,
   bad: Uint8Array,
 ): number {
+  // Nearly always one good code throughout.
+  if (status.length > 0 && isGoodCode(status[0], rule) && areAllSame(status)) return 0;
   let count = 0;
   // Codes come in long runs: the last answer is nearly always the next one.
   let lastCode = NaN;
@@ -133,6 +136,12 @@ export function markLowSignal(
   higherIsBetter: boolean,
   low: Uint8Array,
 ): { low: number; mean: number; min: number } {
+  // Nothing beyond the limit, and nothing reported where no scan was recorded: then the sums of the channel are all there is to know.
+  const whole = sumsOf(signal);
+  const isBeyond = higherIsBetter ? whole.min < limit : whole.max > limit;
+  if (!isBeyond && !present.includes(0)) {
+    return { low: 0, mean: whole.mean, min: whole.n === 0 ? NaN : whole.min };
+  }
   let n = 0;
   let sum = 0;
   let min = Infinity;
@@ -149,6 +158,19 @@ export function markLowSignal(
     }
   }
   return { low: count, mean: n === 0 ? NaN : sum / n, min: n === 0 ? NaN : min };
+}
+
+/** Whether every code is the first. */
+function areAllSame(status: Int32Array): boolean {
+  const kernel = seriesKernel(status.length);
+  return kernel.run.areAll(kernel.pointerOfCodes(status), status.length, status[0]) !== 0;
+}
+
+function sumsOf(values: Float64Array): { n: number; mean: number; min: number; max: number } {
+  const kernel = seriesKernel(values.length);
+  kernel.run.sums(kernel.pointerOf(values), values.length, 0, kernel.out);
+  const [n, sum, , min, max] = kernel.results;
+  return { n, mean: n === 0 ? NaN : sum / n, min, max };
 }
 
 /**

@@ -1,4 +1,5 @@
 import { defaultValue } from '../defaults';
+import { seriesKernel } from '../numerics/series-kernel';
 import type { RecipeSettings } from '../schemas/recipe';
 import type { SetUp } from '../schemas/set-up';
 import { trueBoomAzimuthDeg } from '../schemas/set-up';
@@ -96,26 +97,9 @@ export function yamartinoSpreadDeg(meanSine: number, meanCosine: number): number
  * @deviates none
  */
 export function horizontalWind(windU: Float64Array, windV: Float64Array): HorizontalWind {
-  let n = 0;
-  let moving = 0;
-  let sumU = 0;
-  let sumV = 0;
-  let sumSine = 0;
-  let sumCosine = 0;
-  for (let i = 0; i < windU.length; i++) {
-    const u = windU[i];
-    const v = windV[i];
-    const speed = Math.sqrt(u * u + v * v);
-    if (speed !== speed) continue;
-    n++;
-    sumU += u;
-    sumV += v;
-    if (speed > 0) {
-      moving++;
-      sumSine += u / speed;
-      sumCosine += v / speed;
-    }
-  }
+  const kernel = seriesKernel(windU.length);
+  kernel.run.directionSums(kernel.pointerOf(windU, 0), kernel.pointerOf(windV, 1), windU.length, kernel.out);
+  const [n, sumU, sumV, moving, sumSine, sumCosine] = kernel.results;
   return {
     n,
     meanU: n === 0 ? NaN : sumU / n,

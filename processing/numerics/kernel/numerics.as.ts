@@ -323,7 +323,24 @@ export function pairSums(x: usize, y: usize, n: i32, nearX: f64, nearY: f64, out
   let s2y = f64x2.splat(0);
   let sxy = f64x2.splat(0);
   const shift = y - x;
-  for (let at = x; at < end; at += 16) {
+  let at = x;
+  // Whole vectors first, without a question in the loop; the odd end below.
+  const whole = x + ((n & ~1) << 3);
+  for (; at < whole; at += 16) {
+    const a = f64x2.sub(v128.load(at), ox);
+    const b = f64x2.sub(v128.load(at + shift), oy);
+    const p = f64x2.mul(a, b);
+    const m = f64x2.eq(p, p);
+    const da = v128.and(a, m);
+    const db = v128.and(b, m);
+    count = i64x2.sub(count, m);
+    s1x = f64x2.add(s1x, da);
+    s1y = f64x2.add(s1y, db);
+    s2x = f64x2.add(s2x, f64x2.mul(da, da));
+    s2y = f64x2.add(s2y, f64x2.mul(db, db));
+    sxy = f64x2.add(sxy, v128.and(p, m));
+  }
+  if (at < end) {
     const a = f64x2.sub(loadUpTo(at, end), ox);
     const b = f64x2.sub(loadUpTo(at + shift, end + shift), oy);
     const p = f64x2.mul(a, b);
@@ -360,6 +377,100 @@ export function addScaled(x: usize, n: i32, mean: f64, factor: f64, isRequired: 
     const at = <usize>i << 3;
     const d = (load<f64>(x + at) - mean) * factor;
     if (isRequired || d === d) store<f64>(into + at, load<f64>(into + at) + d);
+  }
+}
+
+/** into = x − level − slope t, with t = start + index. */
+export function withoutLine(x: usize, n: i32, level: f64, slope: f64, start: f64, into: usize): void {
+  const end = x + (n << 3);
+  const o = f64x2.splat(level);
+  const b = f64x2.splat(slope);
+  const two = f64x2.splat(2);
+  let t = f64x2.replace_lane(f64x2.splat(start), 1, start + 1);
+  let to = into;
+  for (let at = x; at < end; at += 16) {
+    v128.store(to, f64x2.sub(f64x2.sub(loadUpTo(at, end), o), f64x2.mul(b, t)));
+    t = f64x2.add(t, two);
+    to += 16;
+  }
+}
+
+/** out: samples with both components, Σu, Σv, those that move, and Σ u/|(u, v)|, Σ v/|(u, v)| over them. */
+export function directionSums(u: usize, v: usize, n: i32, out: usize): void {
+  const end = u + (n << 3);
+  const zero = f64x2.splat(0);
+  let count = i64x2.splat(0);
+  let moving = i64x2.splat(0);
+  let sumU = zero;
+  let sumV = zero;
+  let sine = zero;
+  let cosine = zero;
+  let atV = v;
+  for (let at = u; at < end; at += 16) {
+    const x = loadUpTo(at, end);
+    const y = at + 8 === end ? v128.load64_zero(atV) : v128.load(atV);
+    const speed = f64x2.sqrt(f64x2.add(f64x2.mul(x, x), f64x2.mul(y, y)));
+    const m = f64x2.eq(speed, speed);
+    const g = f64x2.gt(speed, zero);
+    count = i64x2.sub(count, m);
+    moving = i64x2.sub(moving, g);
+    sumU = f64x2.add(sumU, v128.and(x, m));
+    sumV = f64x2.add(sumV, v128.and(y, m));
+    sine = f64x2.add(sine, v128.and(f64x2.div(x, speed), g));
+    cosine = f64x2.add(cosine, v128.and(f64x2.div(y, speed), g));
+    atV += 16;
+  }
+  store<f64>(out, <f64>(i64x2.extract_lane(count, 0) + i64x2.extract_lane(count, 1)));
+  store<f64>(out, lanesAdded(sumU), 8);
+  store<f64>(out, lanesAdded(sumV), 16);
+  store<f64>(out, <f64>(i64x2.extract_lane(moving, 0) + i64x2.extract_lane(moving, 1)), 24);
+  store<f64>(out, lanesAdded(sine), 32);
+  store<f64>(out, lanesAdded(cosine), 40);
+}
+
+/** into = w/|(u, v)|, 0 in still air, NaN where a component is missing; returns how many are beyond ± limit. */
+export function slopes(u: usize, v: usize, w: usize, n: i32, limit: f64, into: usize): i32 {
+  const bytes = <usize>n << 3;
+  const zero = f64x2.splat(0);
+  const most = f64x2.splat(limit);
+  let steep: i32 = 0;
+  for (let i: usize = 0; i < bytes; i += 16) {
+    const isOdd = i + 8 === bytes;
+    const x = isOdd ? v128.load64_zero(u + i) : v128.load(u + i);
+    const y = isOdd ? v128.load64_zero(v + i) : v128.load(v + i);
+    const z = isOdd ? v128.load64_zero(w + i) : v128.load(w + i);
+    const level = f64x2.sqrt(f64x2.add(f64x2.mul(x, x), f64x2.mul(y, y)));
+    const ratio = v128.bitselect(f64x2.mul(zero, level), f64x2.div(z, level), f64x2.eq(z, zero));
+    v128.store(into + i, ratio);
+    steep += popcnt(i64x2.bitmask(f64x2.gt(f64x2.abs(ratio), most)));
+  }
+  return steep;
+}
+
+/** Whether all of some 32-bit numbers are the same as `code`. */
+export function areAll(x: usize, n: i32, code: i32): bool {
+  const end = x + (n << 2);
+  const same = i32x4.splat(code);
+  let at = x;
+  for (; at + 16 <= end; at += 16) if (!i32x4.all_true(i32x4.eq(v128.load(at), same))) return false;
+  for (; at < end; at += 4) if (load<i32>(at) !== code) return false;
+  return true;
+}
+
+/** into = factor × x + offset of single-precision x, squared first where asked; infinities become missing. */
+export function convertSingles(x: usize, n: i32, factor: f64, offset: f64, isSquared: bool, into: usize): void {
+  const f = f64x2.splat(factor);
+  const o = f64x2.splat(offset);
+  const none = f64x2.splat(NaN);
+  const zero = f64x2.splat(0);
+  let to = into;
+  const end = to + (n << 3);
+  for (let at = x; to < end; at += 8) {
+    let value = f64x2.promote_low_f32x4(v128.load64_zero(at));
+    if (isSquared) value = f64x2.mul(value, value);
+    const inner = f64x2.add(f64x2.mul(value, f), o);
+    v128.store(to, v128.bitselect(inner, none, f64x2.eq(f64x2.sub(inner, inner), zero)));
+    to += 16;
   }
 }
 
@@ -486,8 +597,21 @@ function binsOf(v: v128, low: v128, scale: v128, last: v128): v128 {
   return i32x4.min_s(i32x4.trunc_sat_f64x2_s_zero(f64x2.mul(f64x2.sub(v, low), scale)), last);
 }
 
-/** Counts values, none of them missing, in bins of equal width; `counts` holds twice as many 32-bit numbers as there are bins. */
-export function countInBins(x: usize, n: i32, min: f64, scale: f64, bins: i32, counts: usize): void {
+/**
+ * Counts values, none of them missing, in bins of equal width, and notes the bin of each.
+ *
+ * @param counts room for twice as many 32-bit numbers as there are bins
+ * @param noted receives one 16-bit number for each value, and behind the last up to 7 that are no bin
+ */
+export function countInBins(
+  x: usize,
+  n: i32,
+  min: f64,
+  scale: f64,
+  bins: i32,
+  counts: usize,
+  noted: usize,
+): void {
   memory.fill(counts, 0, bins << 3);
   const second = counts + (bins << 2);
   const low = f64x2.splat(min);
@@ -495,60 +619,44 @@ export function countInBins(x: usize, n: i32, min: f64, scale: f64, bins: i32, c
   const last = i32x4.splat(bins - 1);
   const end = x + (n << 3);
   let at = x;
+  let note = noted;
   for (; at + 16 <= end; at += 16) {
     const bin = binsOf(v128.load(at), low, factor, last);
+    const first = i32x4.extract_lane(bin, 0);
+    const other = i32x4.extract_lane(bin, 1);
     // Two tables: neighbours are often in one bin, and the second would wait for the first.
-    const a = counts + (i32x4.extract_lane(bin, 0) << 2);
-    const b = second + (i32x4.extract_lane(bin, 1) << 2);
+    const a = counts + (first << 2);
+    const b = second + (other << 2);
     store<i32>(a, load<i32>(a) + 1);
     store<i32>(b, load<i32>(b) + 1);
+    store<i32>(note, first | (other << 16));
+    note += 4;
   }
   if (at < end) {
-    const a = counts + (i32x4.extract_lane(binsOf(v128.load64_zero(at), low, factor, last), 0) << 2);
+    const bin = i32x4.extract_lane(binsOf(v128.load64_zero(at), low, factor, last), 0);
+    const a = counts + (bin << 2);
     store<i32>(a, load<i32>(a) + 1);
+    store<i16>(note, <i16>bin);
+    note += 2;
   }
+  v128.store(note, i16x8.splat(-1));
   for (let bin = counts; bin < second; bin += 4) {
     store<i32>(bin, load<i32>(bin) + load<i32>(bin + (bins << 2)));
   }
 }
 
-/** Copies the values of one bin to `into`; out: smallest value of the bins behind. Returns how many were copied. */
-export function takeBin(
-  x: usize,
-  n: i32,
-  min: f64,
-  scale: f64,
-  bins: i32,
-  wanted: i32,
-  into: usize,
-  out: usize,
-): i32 {
-  const low = f64x2.splat(min);
-  const factor = f64x2.splat(scale);
-  const last = i32x4.splat(bins - 1);
-  const want = i32x4.splat(wanted);
-  const none = f64x2.splat(Infinity);
-  let behind = none;
+/** Copies the values whose noted bin is `wanted` to `into`, in order. Returns how many they are. */
+export function takeBin(x: usize, n: i32, noted: usize, wanted: i32, into: usize): i32 {
+  const want = i16x8.splat(<i16>wanted);
   let to = into;
-  const end = x + (n << 3);
-  for (let at = x; at < end; at += 16) {
-    const isOdd = at + 8 === end;
-    const v = isOdd ? f64x2.replace_lane(v128.load64_zero(at), 1, -Infinity) : v128.load(at);
-    const bin = binsOf(v, low, factor, last);
-    behind = f64x2.pmin(behind, v128.bitselect(v, none, i64x2.extend_low_i32x4_s(i32x4.gt_s(bin, want))));
-    const hit = i32x4.bitmask(i32x4.eq(bin, want)) & (isOdd ? 1 : 3);
-    if (hit !== 0) {
-      if (hit & 1) {
-        store<f64>(to, f64x2.extract_lane(v, 0));
-        to += 8;
-      }
-      if (hit & 2) {
-        store<f64>(to, f64x2.extract_lane(v, 1));
-        to += 8;
-      }
+  for (let i: i32 = 0; i < n; i += 8) {
+    let hits = i16x8.bitmask(i16x8.eq(v128.load(noted + (i << 1)), want));
+    while (hits !== 0) {
+      store<f64>(to, load<f64>(x + ((i + ctz(hits)) << 3)));
+      to += 8;
+      hits &= hits - 1;
     }
   }
-  store<f64>(out, Math.min(f64x2.extract_lane(behind, 0), f64x2.extract_lane(behind, 1)));
   return <i32>((to - into) >> 3);
 }
 

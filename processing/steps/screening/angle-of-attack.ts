@@ -1,4 +1,6 @@
-import { quantilesInPlace, scratch } from '../../numerics/selection';
+import { countValid } from '../../numerics/moments';
+import { quantiles } from '../../numerics/selection';
+import { seriesKernel } from '../../numerics/series-kernel';
 
 const degrees = 180 / Math.PI;
 
@@ -34,24 +36,26 @@ export function angleOfAttack(
   const steepest = acceptanceDeg >= 90 ? Infinity : Math.tan(acceptanceDeg / degrees);
   // A ratio one rounding above the limit is the limit.
   const limit = steepest * (1 + 4 * Number.EPSILON);
-  const work = scratch(windW.length);
-  let n = 0;
-  let steep = 0;
-  for (let i = 0; i < windW.length; i++) {
-    const u = windU[i];
-    const v = windV[i];
-    const w = windW[i];
-    const horizontal = Math.sqrt(u * u + v * v);
-    // Still air has no angle; it counts as level.
-    const ratio = w === 0 ? 0 * horizontal : w / horizontal;
-    if (ratio !== ratio) continue;
-    work[n++] = ratio;
-    if (Math.abs(ratio) > limit) steep++;
-  }
-  const [p1, p50, p99] = quantilesInPlace(work, n, [0.01, 0.5, 0.99]).map((at) => Math.atan(at) * degrees);
+  const { length } = windW;
+  const kernel = seriesKernel(length);
+  const [, into] = kernel.work;
+  // Still air has no angle; it counts as level.
+  const steep = kernel.run.slopes(
+    kernel.pointerOf(windU, 0),
+    kernel.pointerOf(windV, 1),
+    kernel.pointerOf(windW, 2),
+    ...([length, limit, into] as const),
+  );
+  const ratios = kernel.valuesAt(into, length);
+  const n = countValid(ratios);
+  const [p1, p50, p99] = quantiles(ratios, [0.01, 0.5, 0.99]);
   return {
     n,
     steepShare: n === 0 ? NaN : steep / n,
-    percentilesDeg: [p1, p50, p99],
+    percentilesDeg: [angleDeg(p1), angleDeg(p50), angleDeg(p99)],
   };
+}
+
+function angleDeg(ratio: number): number {
+  return Math.atan(ratio) * degrees;
 }
