@@ -135,14 +135,7 @@ export default [
     'app/ holds thin routes: components only.',
   ),
   {
-    files: [
-      'scripts/**',
-      'workers/node/**',
-      'server/main.ts',
-      'tests/**',
-      '*.config.*',
-      'metro.config.js',
-    ],
+    files: ['scripts/**', 'workers/node/**', 'server/main.ts', 'tests/**', '*.config.*', 'metro.config.js'],
     rules: { 'no-console': 'off' },
   },
   {
