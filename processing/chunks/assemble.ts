@@ -49,10 +49,11 @@ export class BlockArrays {
     this.#used = { float64: 0, int32: 0, bytes: 0 };
   }
 
+  /** What stands in it is left over from the block before. */
   float64(length: number): Float64Array {
     const n = this.#used.float64++;
     if ((this.#float64[n]?.length ?? -1) !== length) this.#float64[n] = new Float64Array(length);
-    return this.#float64[n].fill(NaN);
+    return this.#float64[n];
   }
 
   int32(length: number): Int32Array {
@@ -215,6 +216,10 @@ function merge(
     const isStatus = statusChannels.includes(channel);
     if (isStatus && !withStatus) continue;
     const values = isStatus ? null : arrays.float64(length);
+    // One piece that holds every slot leaves nothing to be marked as missing, where it has the channel.
+    const isWhole = pieces.length === 1 && merged.recorded === length;
+    let isFilled = false;
+    if (!isWhole) values?.fill(NaN);
     const status = isStatus ? arrays.int32(length) : null;
     // Slots that a file of higher precedence recorded with this channel, value or not; needed only where files may overlap.
     const covered = mayOverlap ? arrays.bytes(length) : null;
@@ -232,8 +237,10 @@ function merge(
       const written = columns.values[channel];
       if (values !== null && written !== undefined) {
         copyValues({ from, to, shift, present, covered }, written, conversions[channel][column.unit], values);
+        isFilled = true;
       }
     }
+    if (isWhole && !isFilled) values?.fill(NaN);
     if (values !== null) merged.values[channel] = values;
     if (status !== null) merged.status[channel] = status;
   }

@@ -381,21 +381,17 @@ export class Ingest {
   /** Rows [from, to) of a block, all of one half hour, into its slots. */
   #copyRows(block: RowBlock, chunk: OpenChunk, from: number, to: number): void {
     const slotOf = this.#slotOf;
-    let { firstSlot, lastSlot } = chunk;
-    let read = 0;
-    for (let i = from; i < to; i++) {
-      const slot = slotOf[i];
-      if (slot < 0) continue;
-      read++;
-      if (slot < firstSlot) firstSlot = slot;
-      if (slot > lastSlot) lastSlot = slot;
-    }
-    chunk.firstSlot = firstSlot;
-    chunk.lastSlot = lastSlot;
-    chunk.placed += read;
-    this.#valueChannels.forEach(({ column }, c) =>
-      copyValues(block.columns[column], slotOf, from, to, chunk.values[c]),
-    );
+    const span = spanOfSlots(slotOf, from, to);
+    if (span.placed === 0) return;
+    chunk.firstSlot = Math.min(chunk.firstSlot, span.first);
+    chunk.lastSlot = Math.max(chunk.lastSlot, span.last);
+    chunk.placed += span.placed;
+    this.#valueChannels.forEach(({ column }, c) => {
+      const values = block.columns[column];
+      // Nearly always scan after scan: then the rows go over as they are.
+      if (span.isUnbroken) chunk.values[c].set(values.subarray(from, to), span.first);
+      else copyValues(values, slotOf, from, to, chunk.values[c]);
+    });
     this.#statusChannels.forEach(({ column }, c) =>
       copyCodes(block.columns[column], slotOf, from, to, chunk.status[c]),
     );
@@ -830,6 +826,28 @@ export class Ingest {
     const column = this.#options.layout.columns.find((c) => c.index === field);
     return column?.name ?? column?.channel ?? 'time';
   }
+}
+
+/** Slots of some rows: how many have one, the first and last of them, and whether every row has the slot behind the row before. */
+function spanOfSlots(
+  slotOf: Int32Array,
+  from: number,
+  to: number,
+): { placed: number; first: number; last: number; isUnbroken: boolean } {
+  let placed = 0;
+  let first = Infinity;
+  let last = -1;
+  let isUnbroken = from < to && slotOf[from] >= 0;
+  const begin = slotOf[from] - from;
+  for (let i = from; i < to; i++) {
+    const slot = slotOf[i];
+    if (slot - i !== begin) isUnbroken = false;
+    if (slot < 0) continue;
+    placed++;
+    if (slot < first) first = slot;
+    if (slot > last) last = slot;
+  }
+  return { placed, first, last, isUnbroken };
 }
 
 function copyValues(
